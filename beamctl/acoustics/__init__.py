@@ -1,0 +1,1 @@
+"""Pure physics of sound in air and of panels of small transducers. Arrays in, arrays out."""

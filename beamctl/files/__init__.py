@@ -1,0 +1,1 @@
+"""Show folder to model, and back. Reading never changes a file."""

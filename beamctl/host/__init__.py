@@ -1,0 +1,1 @@
+"""Composition root: player, journal, engine process and the links between processes."""

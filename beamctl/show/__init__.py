@@ -1,0 +1,1 @@
+"""The pure show: what is written, what happens when, and in which order. No files, clocks, threads."""

@@ -1,0 +1,1 @@
+"""Where samples go: a device, a file, or nowhere."""

@@ -1,0 +1,90 @@
+"""The frozen picture of everything a screen or a reply may show, made by the host 20 times a second.
+
+Texts that change only with an edit (titles, notes) travel once, as `SheetView`.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True, slots=True)
+class CueText:
+    """What is written of one cue."""
+
+    ref: str
+    title: str
+    note: str = ""
+    then: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class SheetView:
+    """The sheet as text; `version` changes with every edit."""
+
+    version: int
+    title: str
+    cues: tuple[CueText, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class BeamView:
+    """One beam now. Angles are (azimuth, elevation) in the panel's frame, degrees."""
+
+    name: str
+    panel: str
+    cue: str  # the cue that last touched it, "" before the first
+    sound: str  # "" when silent
+    target: str  # "seat B4", "spot conductor via back_wall", "" for plain angles
+    level_db: float | None  # carrier trim now; None when silent
+    depth: float
+    law: str
+    aim_deg: tuple[float, float]
+    peak_deg: tuple[float, float] | None  # predicted carrier peak; None while it is not computed
+    reach_m: float | None  # None is far
+    travelling: bool
+
+
+@dataclass(frozen=True, slots=True)
+class PanelView:
+    """One panel's drive over the last tenth of a second."""
+
+    name: str
+    feeds: int
+    peak_db: float | None  # highest feed peak re full scale; None for exact zero
+    shared_gain_db: float  # below 0 while the panel's beams share the drive between them
+
+
+@dataclass(frozen=True, slots=True)
+class EngineView:
+    """How the engine and its sink are doing."""
+
+    sink: str
+    rate_hz: int
+    feeds: int
+    quantum: int
+    ring_ms: float
+    rendered: int  # samples handed to the sink since it opened
+    late: int  # times the sink ran dry
+    load_pct: float  # share of the time that rendering takes
+    compile_s: float
+
+
+@dataclass(frozen=True, slots=True)
+class Snapshot:
+    """Everything at one moment."""
+
+    sheet_version: int
+    output: str  # an output state of DEVELOPERS.md, upper case
+    standby: str  # "" when nothing stands by
+    newest: str  # the cue fired last, "" before the first
+    since_go_s: float | None
+    holding: bool
+    arming: bool  # the first of the two keys was pressed, and its five seconds still run
+    states: dict[str, str]  # cue ref → state, only those that are not resting
+    left_s: dict[str, float]  # running or tailing cue → seconds until it is done, where known
+    follow: dict[str, float]  # cue that will follow by itself → seconds until it does
+    beams: tuple[BeamView, ...]
+    panels: tuple[PanelView, ...]
+    engine: EngineView
+    notices: tuple[str, ...]  # unacknowledged, oldest first
