@@ -1,0 +1,129 @@
+"""The one registry of what a person or a show system can do.
+
+Keys, the legend, help and the OSC address list all come from `ACTIONS`; a key that is bound
+nowhere else does nothing. `event` is the class that every way of asking makes.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from beamctl.show import events
+
+
+@dataclass(frozen=True, slots=True)
+class Action:
+    """One action. `osc` is the address under /beamctl/1, "" where the network may not ask."""
+
+    name: str
+    event: type[events.Event]
+    title: str
+    keys: tuple[str, ...]
+    help: str
+    osc: str = ""
+    role: str = ""
+
+
+ACTIONS: dict[str, Action] = {
+    action.name: action
+    for action in (
+        Action(
+            "go",
+            events.Go,
+            "Go",
+            ("enter", "kp_enter"),
+            "Fires the cue standing by. After * it arms or restores instead.",
+            "go",
+            "trigger",
+        ),
+        Action(
+            "hush",
+            events.Hush,
+            "Hush",
+            ("0", "kp_0", "insert", "f12"),
+            "Silence now, by a 20 ms ramp, from every screen. Never asks.",
+            "hush",
+            "hush",
+        ),
+        Action(
+            "ready",
+            events.Ready,
+            "Ready",
+            ("asterisk", "kp_multiply"),
+            "First of two keys: * then Enter within 5 s arms from SHUT, restores from HUSHED.",
+        ),
+        Action(
+            "confirm",
+            events.Confirm,
+            "Arm or restore",
+            (),
+            "Second of the two acts; Enter makes it while READY shows.",
+        ),
+        Action(
+            "restore",
+            events.Restore,
+            "Restore",
+            (),
+            "Return from HUSHED, asked for by a show system.",
+            "restore",
+            "trigger",
+        ),
+        Action(
+            "standby",
+            events.StandBy,
+            "Stand by",
+            (),
+            "Puts a cue on stand-by; never fires it.",
+            "standby",
+            "trigger",
+        ),
+        Action(
+            "next",
+            events.Step,
+            "Stand-by on",
+            ("plus", "kp_plus"),
+            "Moves stand-by one cue on.",
+        ),
+        Action(
+            "back",
+            events.Step,
+            "Stand-by back",
+            ("minus", "kp_minus"),
+            "Moves stand-by one cue back.",
+        ),
+        Action(
+            "tail",
+            events.Tail,
+            "Tail",
+            ("full_stop", "kp_decimal", "delete"),
+            "Ends what the newest running cue sounds, over a second.",
+            "tail",
+            "trigger",
+        ),
+        Action(
+            "hold",
+            events.Hold,
+            "Hold",
+            ("f10",),
+            "Freezes every glide and follow-on clock; F10 again carries on.",
+            "hold",
+            "trigger",
+        ),
+        Action(
+            "carry-on",
+            events.CarryOn,
+            "Carry on",
+            (),
+            "Carries on with what hold froze.",
+            "carry-on",
+            "trigger",
+        ),
+        Action(
+            "acknowledge",
+            events.Acknowledge,
+            "Acknowledge",
+            (),
+            "Takes the oldest notice off the screen; * does it too.",
+        ),
+    )
+}
