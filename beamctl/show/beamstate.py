@@ -1,0 +1,226 @@
+"""What one beam is doing: rows of glides, and how a record changes them.
+
+The renderer and the player both keep one `BeamState` per beam and feed it the same records; the
+renderer's rows are views into its compiled arrays.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from beamctl.show import glides
+from beamctl.show.glides import Row
+from beamctl.show.records import Record
+
+LAWS = ("dsb", "root", "ssb", "mam")
+DEFAULT_DEPTH = 0.7
+DEFAULT_TRIM_DB = -60.0
+MIN_GLIDE_S = 0.020  # every change of level takes at least this
+EASE_S = 0.050  # a travel takes this long to get going and to stop
+SWAP_S = 0.020  # cross-fade between sounds, and between laws
+
+
+@dataclass(slots=True)
+class Voice:
+    """One sound a beam plays: `weight` is a scalar row, `start` the sample of its first frame."""
+
+    sound: str
+    start: int
+    loop: bool
+    weight: Row
+
+
+@dataclass(slots=True)
+class BeamState:
+    """Rows of one beam; see glides.py for their layout. `law` holds one weight row per law."""
+
+    rate_hz: int
+    level: Row = field(default_factory=lambda: np.zeros(glides.SCALAR_SIZE))
+    depth: Row = field(default_factory=lambda: np.zeros(glides.SCALAR_SIZE))
+    reach: Row = field(default_factory=lambda: np.zeros(glides.REACH_SIZE))
+    aim: Row = field(default_factory=lambda: np.zeros(glides.TRAVEL_SIZE))
+    law: NDArray[np.float64] = field(
+        default_factory=lambda: np.zeros((len(LAWS), glides.SCALAR_SIZE))
+    )
+    voices: list[Voice] = field(default_factory=list)
+    _frozen: dict[str, tuple[float, ...]] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        self.level[:] = 0.0
+        self.depth[:] = (0, 0, DEFAULT_DEPTH, DEFAULT_DEPTH, 0, 0)
+        self.reach[:] = 0.0
+        self.aim[:] = 0.0
+        self.aim[glides.AT : glides.AT + 3] = (0.0, 1.0, 0.0)
+        self.aim[glides.GOAL : glides.GOAL + 3] = (0.0, 1.0, 0.0)
+        self.law[:] = 0.0
+        self.law[0, (glides.FROM, glides.TO)] = 1.0
+
+    def apply(self, record: Record) -> None:
+        """Change the rows as `record` says; KeyError for a record that is not a beam's."""
+        _APPLY[record.what](self, record.sample, record.args)
+
+    def power_at(self, sample: int) -> float:
+        """Square of the beam's gain."""
+        return max(0.0, glides.scalar_at(self.level, sample))
+
+    def direction_at(self, sample: int) -> tuple[float, float, float, float]:
+        """Unit direction in panel axes, and the distance to the target in metres (0: none)."""
+        return glides.travel_at(self.aim, sample)
+
+    def reach_per_m_at(self, sample: int) -> float:
+        """Focus in 1/metres."""
+        return glides.reach_at(self.reach, sample, self.direction_at(sample)[3])
+
+    def depth_at(self, sample: int) -> float:
+        """Modulation depth, 0 to 1."""
+        return glides.scalar_at(self.depth, sample)
+
+    def law_name(self) -> str:
+        """The law the beam has, or is changing to."""
+        return LAWS[int(np.argmax(self.law[:, glides.TO]))]
+
+    def silent(self, sample: int) -> bool:
+        """True when the beam is at zero and stays there."""
+        return self.level[glides.TO] == 0.0 and glides.is_settled(self.level, sample)
+
+    def travelling(self, sample: int) -> bool:
+        """True while the aim changes."""
+        return not glides.travel_settled(self.aim, sample)
+
+    # -- what each record does ------------------------------------------------------------
+
+    def _glide(self, row: Row, sample: int, goal: float, n: int, shortest: float = 0.0) -> None:
+        """Take `row` from wherever it is to `goal` over n samples, keeping its slope at first."""
+        value = glides.scalar_at(row, sample)
+        slope = glides.scalar_at(row, sample + 1) - value
+        if abs(slope) < 1e-15:
+            slope = 0.0
+        over = shortest
+        if slope < 0.0:  # never carried below zero: 4/27 n |slope| stays under the value
+            over = min(shortest, 4.0 * value / -slope)
+        row[: glides.SCALAR_SIZE] = (sample, n, value, goal, slope, over if slope else 0.0)
+
+    def _level(self, sample: int, args: Any) -> None:
+        n = max(int(args["n"]), round(MIN_GLIDE_S * self.rate_hz))
+        self._glide(self.level, sample, float(args["power"]), n, MIN_GLIDE_S * self.rate_hz)
+
+    def _depth(self, sample: int, args: Any) -> None:
+        n = max(int(args["n"]), round(MIN_GLIDE_S * self.rate_hz))
+        self._glide(self.depth, sample, float(args["depth"]), n)
+
+    def _law(self, sample: int, args: Any) -> None:
+        n = max(int(args["n"]), round(SWAP_S * self.rate_hz))
+        for row, name in zip(self.law, LAWS, strict=True):
+            self._glide(row, sample, float(name == args["law"]), n)
+
+    def _aim(self, sample: int, args: Any) -> None:
+        row, n = self.aim, int(args["n"])
+        x, y, z, distance = glides.travel_at(row, sample)
+        step = np.subtract(glides.travel_at(row, sample + 1)[:3], (x, y, z))
+        if self.silent(sample) or n == 0 or float(np.abs(step).max()) < 1e-15:
+            step[:] = 0.0
+        goal = np.asarray(args.get("point_m") or args["direction"], np.float64)
+        line = "point_m" in args and (distance > 0.0 or n == 0)
+        here = np.array((x, y, z)) * (distance if line and distance > 0.0 else 1.0)
+        if not line and "point_m" in args:
+            here = here * float(np.linalg.norm(goal))  # from an angle: along a line from as far out
+            line = True
+        start = goal if n == 0 else here
+        row[:3] = (sample, n, glides.LINE if line else glides.ARC)
+        row[glides.AT : glides.AT + 3] = start
+        row[glides.GOAL : glides.GOAL + 3] = goal
+        row[glides.DRIFT : glides.DRIFT + 3] = step
+        row[glides.DRIFT_N] = EASE_S * self.rate_hz if step.any() else 0.0
+        row[glides.EASE] = min(0.5, EASE_S * self.rate_hz / n) if n else 0.5
+        if not line:
+            self._stop_following(sample, distance)
+
+    def _stop_following(self, sample: int, distance_m: float) -> None:
+        """A target without a distance cannot be followed: the focus stays where it was."""
+        if self.reach[glides.TO_FOLLOWS]:
+            value = glides.reach_at(self.reach, sample, distance_m)
+            self.reach[:] = (sample, 0, value, value, 0, 0, 0, 0)
+
+    def _reach(self, sample: int, args: Any) -> None:
+        n = int(args["n"])
+        distance = glides.travel_at(self.aim, sample)[3]
+        value = glides.reach_at(self.reach, sample, distance)
+        follows = args["per_m"] == "aim"
+        goal = 0.0 if follows else float(args["per_m"])
+        self.reach[:] = (sample, n, value, goal, 0, 0, 0, follows)
+
+    def _play(self, sample: int, args: Any) -> None:
+        swap = round(SWAP_S * self.rate_hz)
+        sounding = bool(self.voices) and not self.silent(sample)
+        self._fade_voices(sample, swap)
+        first = 0.0 if sounding else 1.0
+        if not sounding:
+            self.voices.clear()
+        weight = np.array((sample, swap if sounding else 0, first, 1.0, 0.0, 0.0))
+        self.voices.append(Voice(str(args["sound"]), sample, bool(args["loop"]), weight))
+
+    def _stop(self, sample: int, args: Any) -> None:
+        self._fade_voices(sample, int(args["n"]))
+
+    def _fade_voices(self, sample: int, n: int) -> None:
+        self.voices = [v for v in self.voices if not self._faded(v, sample)]
+        for voice in self.voices:
+            if voice.weight[glides.TO] != 0.0:
+                self._glide(voice.weight, sample, 0.0, n)
+
+    def _faded(self, voice: Voice, sample: int) -> bool:
+        return voice.weight[glides.TO] == 0.0 and glides.is_settled(voice.weight, sample)
+
+    def _freeze(self, sample: int, args: Any) -> None:
+        if self._frozen:
+            return
+        self._frozen = {
+            name: tuple(row) for name, row in self._moving_rows(sample) if name != "aim"
+        }
+        self._frozen |= {"aim": tuple(self.aim)} if self.travelling(sample) else {}
+        self._frozen["sample"] = (float(sample),)
+        shortest = MIN_GLIDE_S * self.rate_hz
+        for _, row in self._moving_rows(sample):
+            if row is not self.aim:
+                self._glide(row, sample, glides.scalar_at(row, sample), 0, shortest)
+        if self.travelling(sample):
+            *direction, distance = glides.travel_at(self.aim, sample)
+            goal = np.array(direction) * (distance or 1.0)
+            kind = "point_m" if distance else "direction"
+            self._aim(sample, {kind: goal.tolist(), "n": round(EASE_S * self.rate_hz)})
+
+    def _moving_rows(self, sample: int) -> list[tuple[str, Row]]:
+        rows = [("level", self.level), ("depth", self.depth)]
+        return [(name, row) for name, row in rows if not glides.is_settled(row, sample)]
+
+    def _thaw(self, sample: int, args: Any) -> None:
+        frozen, self._frozen = self._frozen, {}
+        if not frozen:
+            return
+        at = frozen.pop("sample")[0]
+        for name, old in frozen.items():
+            left = max(1, round(old[glides.START] + old[glides.N] - at))
+            if name == "aim":
+                kind = "point_m" if old[glides.KIND] == glides.LINE else "direction"
+                goal = list(old[glides.GOAL : glides.GOAL + 3])
+                self._aim(sample, {kind: goal, "n": left})
+            else:
+                shortest = MIN_GLIDE_S * self.rate_hz
+                self._glide(getattr(self, name), sample, old[glides.TO], left, shortest)
+
+
+_APPLY = {
+    "level": BeamState._level,
+    "depth": BeamState._depth,
+    "law": BeamState._law,
+    "aim": BeamState._aim,
+    "reach": BeamState._reach,
+    "play": BeamState._play,
+    "stop": BeamState._stop,
+    "freeze": BeamState._freeze,
+    "thaw": BeamState._thaw,
+}
