@@ -132,4 +132,3 @@ def gain_ramp(out, level_row, sample, count):
         return
     for i in range(count):
         out[i] = np.sqrt(max(0.0, scalar_at(level_row, sample + i)))
-

@@ -68,7 +68,7 @@ def aim_feeds(coef, delay, cells, back, feed, share, aim_row, reach_row, start, 
     """Phasor parabola and row delay of every feed of one beam, from `start` over `span` samples.
 
     coef   (F, 6) float64: real and imaginary part of c0, c1, c2; phasor(x) = c0 + c1 x + c2 x²
-    delay  (F, 2) float64: delay in sixteenths of a sample and its change per sample
+    delay  (F, 3) float64: delay in sixteenths of a sample, d0 + d1 x + d2 x²
     cells  (N, 3) positions in metres; back (N,) complex: what undoes polarity, phase, trim
     feed   (N,) feed of each cell; share (N,) 1 / live cells of its feed, 0 for a dead cell
     k      (rad/s of the carrier, 1 / speed of sound, base delay s, sixteenths of a sample per s)
@@ -90,14 +90,19 @@ def aim_feeds(coef, delay, cells, back, feed, share, aim_row, reach_row, start, 
             phasor = share[n] * back[n] * complex(cos(phase), sin(phase))
             coef[feed[n], 2 * step] += phasor.real
             coef[feed[n], 2 * step + 1] += phasor.imag
-            if step != 1:
-                delay[feed[n], step // 2] += share[n] * tau * per_s
+            delay[feed[n], step] += share[n] * tau * per_s
     for f in range(coef.shape[0]):
         for q in range(2):
-            p0, p1, p2 = coef[f, q], coef[f, 2 + q], coef[f, 4 + q]
-            coef[f, 2 + q] = (-3.0 * p0 + 4.0 * p1 - p2) / span
-            coef[f, 4 + q] = 2.0 * (p0 - 2.0 * p1 + p2) / (span * span)
-        delay[f, 1] = (delay[f, 1] - delay[f, 0]) / span
+            _to_parabola(coef[f, q::2], span)
+        _to_parabola(delay[f], span)
+
+
+@compiled
+def _to_parabola(p, span):
+    """Values at 0, span / 2 and span, in place, to the coefficients of 1, x and x²."""
+    p0, p1, p2 = p[0], p[1], p[2]
+    p[1] = (-3.0 * p0 + 4.0 * p1 - p2) / span
+    p[2] = 2.0 * (p0 - 2.0 * p1 + p2) / (span * span)
 
 
 @compiled
@@ -110,14 +115,15 @@ def add_beam(acc, rows, coef, delay, ramp, row_at, piece, begin, end, segment):
     ramp   (segment,) float32: 0, 1, 2 …
     """
     for f in range(coef.shape[0]):
-        d0, d1 = delay[f, 0], delay[f, 1]
+        d0, d2 = delay[f, 0], delay[f, 2]
+        d1 = delay[f, 1] + d2 * (segment - piece)  # of the chord, which picks the rows
         x = 0
         while x < segment - piece:
-            row = int(floor(d0 + d1 * x))
+            row = floor(d0 + d1 * x)
             if d1 > 0.0:
-                stop = int(ceil((row + 1 - d0) / d1))
+                stop = ceil((row + 1 - d0) / d1)
             elif d1 < 0.0:
-                stop = int(floor((row - d0) / d1)) + 1
+                stop = floor((row - d0) / d1) + 1
             else:
                 stop = segment - piece
             stop = min(max(stop, x + 1), segment - piece)
@@ -135,8 +141,9 @@ def add_beam(acc, rows, coef, delay, ramp, row_at, piece, begin, end, segment):
                     rows[rb, 0, sb : sb + n],
                     rows[rb, 1, sb : sb + n],
                     ramp[low - x : high - x],
-                    np.float32(d0 + d1 * x - row),
-                    np.float32(d1),
+                    np.float32(d0 + x * (delay[f, 1] + x * d2) - row),
+                    np.float32(delay[f, 1] + 2.0 * x * d2),
+                    np.float32(d2),
                     np.float32(coef[f, 0] + x * (coef[f, 2] + x * coef[f, 4])),
                     np.float32(coef[f, 1] + x * (coef[f, 3] + x * coef[f, 5])),
                     np.float32(coef[f, 2] + 2.0 * x * coef[f, 4]),
@@ -148,11 +155,11 @@ def add_beam(acc, rows, coef, delay, ramp, row_at, piece, begin, end, segment):
 
 
 @compiled
-def _add_run(out_i, out_q, a_i, a_q, b_i, b_q, ramp, w0, w1, c0, s0, c1, s1, c2, s2):
+def _add_run(out_i, out_q, a_i, a_q, b_i, b_q, ramp, w0, w1, w2, c0, s0, c1, s1, c2, s2):
     """One run of samples between the same two rows; everything float32 and contiguous."""
     for i in range(out_i.shape[0]):
         t = ramp[i]
-        w = w0 + w1 * t
+        w = w0 + t * (w1 + t * w2)
         e_i = a_i[i] + w * (b_i[i] - a_i[i])
         e_q = a_q[i] + w * (b_q[i] - a_q[i])
         c = c0 + t * (c1 + t * c2)

@@ -28,7 +28,7 @@ F32 = NDArray[np.float32]
 
 
 class Buffers(NamedTuple):
-    """What the beams (axis 0) of a panel carry from step to step; history first, then the segment."""
+    """What a panel's beams (axis 0) carry from step to step; history first, then the segment."""
 
     programme: F32  # (B, 2, 128) analytic programme at half rate
     half: F32  # (B, 2, 2, …) envelope at half rate, as the law makes it, even and odd positions
@@ -41,7 +41,7 @@ class Buffers(NamedTuple):
     held: NDArray[np.float64]
     demands: NDArray[np.float64]
     coef: NDArray[np.float64]  # (B, F, 6) phasor parabolas
-    delay: NDArray[np.float64]  # (B, F, 2) row delays
+    delay: NDArray[np.float64]  # (B, F, 3) parabolas of the row delays
     level: NDArray[np.float64]  # (B, 6) rows of glides, and so on below
     depth: NDArray[np.float64]
     reach: NDArray[np.float64]
@@ -215,7 +215,7 @@ def _buffers(wiring: Wiring, feeds: int, rate_hz: int, beams: int) -> Buffers:
         held=np.zeros((beams, sharing.SMOOTH)),
         demands=np.zeros((beams, 2)),
         coef=np.zeros((beams, feeds, 6)),
-        delay=np.zeros((beams, feeds, 2)),
+        delay=np.zeros((beams, feeds, 3)),
         level=np.zeros((beams, glides.SCALAR_SIZE)),
         depth=np.zeros((beams, glides.SCALAR_SIZE)),
         reach=np.zeros((beams, glides.REACH_SIZE)),

@@ -1,1 +1,1 @@
-"""The pure show: what is written, what happens when, and in which order. No files, clocks, threads."""
+"""The pure show: what is written, what happens when, in which order. No files, clocks, threads."""

@@ -51,7 +51,7 @@ class Hush(Event):
 
 @dataclass(frozen=True, slots=True)
 class Restore(Event):
-    """Return from HUSHED in one deliberate request, for a show system that cannot press two keys."""
+    """Return from HUSHED in one request, for a show system that cannot press two keys."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,8 +1,8 @@
 """How a value moves: glides of level, depth and reach, and travels of aim, by absolute sample.
 
 Every function here is plain scalar arithmetic on a row of float64, so that the player evaluates it
-as it stands and the engine compiles the same source (`register_jitable` marks it, no more): what the
-desk shows is what the panels do.
+as it stands and the engine compiles the same source (`register_jitable` marks it, no more): what
+the desk shows is what the panels do.
 
 A value never jumps in slope either. A glide that takes over from a moving one keeps the old slope
 and lets it die away (`carry`), because a step in the slope of a carrier is a click once the air
@@ -81,7 +81,7 @@ def scalar_at(row: Any, sample: float) -> float:
 def is_settled(row: Any, sample: float) -> bool:
     """True when a scalar row no longer changes at or after `sample`."""
     t = sample - row[0]
-    return (t >= row[1] or row[2] == row[3]) and (t >= row[5] or row[4] == 0.0)
+    return (t >= row[1] or row[2] == row[3]) and (t >= row[5] or row[4] == 0.0)  # type: ignore[no-any-return]
 
 
 @register_jitable
@@ -120,4 +120,4 @@ def reach_at(row: Any, sample: float, distance_m: float) -> float:
     a = near if row[6] != 0.0 else row[2]
     b = near if row[7] != 0.0 else row[3]
     value = a + (b - a) * u + row[4] * carry(t, row[5])
-    return value if value > 0.0 else 0.0  # type: ignore[no-any-return]
+    return value if value > 0.0 else 0.0

@@ -1,0 +1,182 @@
+"""One beam's acts turned into records, within what the ear does not hear as a click.
+
+A sounding beam that sweeps past a point is an amplitude modulation there, and the air makes sound
+of its square. What counts is how fast the phases across the panel change: the second derivative of
+the squared envelope is at most 2 (dφ/dt)² for an rms phase rate dφ/dt. At PHASE_RATE, together with
+the shortest level ramp at once, it stays 60 dB under a 1 kHz tone at depth 0.8. A travel that would
+be faster is slowed when that costs little, else the beam dips, jumps while silent, and returns.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from math import acos, sqrt
+from typing import Any
+
+import numpy as np
+
+from beamctl.acoustics.cells import CellMap
+from beamctl.show.beamstate import DEFAULT_TRIM_DB, EASE_S, MIN_GLIDE_S, BeamState
+from beamctl.show.glides import TO
+from beamctl.show.records import Record
+from beamctl.show.sheet import Act
+from beamctl.show.targets import Target
+
+PHASE_RATE = 80.0  # rad/s, rms over the panel
+SLOWED_S = 0.15  # a travel is slowed to take up to this long; beyond it the beam dips
+DIP_S = 0.030  # fall and rise of a dip
+DARK_S = 0.004  # silence around the jump, longer than the spread of a panel's delays
+END_FALL_S = 0.050  # fall of the carrier when a one-shot sound has ended
+END_PAD_S = 0.010  # after the sound's last frame: it comes out a few milliseconds late
+
+
+def swing_of(cells: CellMap, wavenumber_per_m: float) -> tuple[float, float]:
+    """Radians rms that a panel's phases change by per radian of aim, and per 1/metre of reach.
+
+    Largest principal spread of the live cells, and the spread of half their squared distance.
+    """
+    at = cells.at_m[~cells.dead]
+    if len(at) < 2:
+        return 0.0, 0.0
+    aim = sqrt(max(0.0, float(np.linalg.eigvalsh(np.cov(at.T, bias=True))[-1])))
+    reach = float(np.std(0.5 * np.sum(at**2, axis=1)))
+    return wavenumber_per_m * aim, wavenumber_per_m * reach
+
+
+@dataclass(slots=True)
+class BeamPlan:
+    """What one beam was told, and what it still has to do by itself."""
+
+    name: str
+    rate_hz: int
+    swing: tuple[float, float]
+    state: BeamState
+    trim_db: float = DEFAULT_TRIM_DB
+    sound: str = ""
+    cue: str = ""  # the cue that last touched it
+    owner: str = ""  # the cue whose sound it plays
+    target: Target = field(default_factory=lambda: Target("", direction=(0.0, 1.0, 0.0)))
+    returns_at: int = 0  # until this sample the beam is in a dip: falling, then dark
+    ends_at: int | None = None  # one-shot sounds: when the carrier falls
+    _out: list[Record] = field(default_factory=list)
+
+    def perform(
+        self, act: Act, sample: int, cue: str, target: Target | None, seconds: float
+    ) -> list[Record]:
+        """Records of one act at `sample`; `seconds` is how long its sound lasts, if it has one."""
+        self.cue = cue
+        if act.fall_s is not None:
+            return self.fall(sample, act.fall_s, cue)
+        n = round(act.over_s * self.rate_hz)
+        fresh = act.sound is not None and not self.sounding(sample)
+        if act.law is not None:
+            self._tell(sample, "law", law=act.law, n=n)
+        if act.depth is not None:
+            self._tell(sample, "depth", depth=act.depth, n=n)
+        if act.reach is not None:
+            self._reach(act.reach, sample, n)
+        if act.trim_db is not None:
+            self.trim_db = act.trim_db
+        if target is not None:
+            self._aim(target, sample, n)
+        if act.sound is not None:
+            self._play(act.sound, act.loop, sample, seconds)
+        if fresh or (act.trim_db is not None and self.sounding(sample)):
+            self._level(sample, self._power(), n)
+        return self._told()
+
+    def fall(self, sample: int, fall_s: float, cue: str) -> list[Record]:
+        """Records that end the beam's sound over `fall_s`."""
+        self.cue = cue
+        if self.sounding(sample):
+            n = max(self._n(fall_s), self._n(MIN_GLIDE_S))
+            self._level(sample, 0.0, n)
+            self._tell(sample, "stop", n=n)
+        self.sound, self.owner, self.ends_at = "", "", None
+        return self._told()
+
+    def end(self, sample: int) -> list[Record]:
+        """Let the carrier go after the last frame of a one-shot sound, at `ends_at`."""
+        return self.fall(sample, END_FALL_S, self.cue)
+
+    def freeze(self, sample: int) -> list[Record]:
+        """Hold every glide where it is; a beam in a dip goes dark first."""
+        self._tell(max(sample, self.returns_at), "freeze")
+        return self._told()
+
+    def thaw(self, sample: int) -> list[Record]:
+        """Carry on with what `freeze` held."""
+        self._tell(max(sample, self.returns_at), "thaw")
+        return self._told()
+
+    def sounding(self, sample: int) -> bool:
+        """True while a carrier is on air, or about to come back from a dip."""
+        return not self.state.silent(sample)
+
+    # -- inside ----------------------------------------------------------------------------
+
+    def _told(self) -> list[Record]:
+        out, self._out = self._out, []
+        return out
+
+    def _tell(self, sample: int, what: str, **args: Any) -> None:
+        record = Record(sample, what, self.name, self.cue, args=args)
+        self.state.apply(record)
+        self._out.append(record)
+
+    def _n(self, seconds: float) -> int:
+        return round(seconds * self.rate_hz)
+
+    def _power(self) -> float:
+        return float(10.0 ** (self.trim_db / 10.0))
+
+    def _play(self, sound: str, loop: bool, sample: int, seconds: float) -> None:
+        self._tell(sample, "play", sound=sound, loop=loop)
+        self.sound, self.owner = sound, self.cue
+        self.ends_at = None if loop else sample + self._n(seconds + END_PAD_S)
+
+    def _level(self, sample: int, power: float, n: int) -> None:
+        """A new level; in a dip it becomes the level to come back to."""
+        self._tell(max(sample, self.returns_at), "level", power=power, n=n)
+
+    def _aim(self, target: Target, sample: int, n: int) -> None:
+        if sample < self.returns_at:
+            self._place(target, self.returns_at - 1, 0)
+        elif not self.sounding(sample):
+            self._place(target, sample, 0)
+        else:
+            self._travel(target, sample, n)
+
+    def _travel(self, target: Target, sample: int, n: int) -> None:
+        x, y, z, _ = self.state.direction_at(sample)
+        a, b, c = target.unit()
+        angle = acos(min(1.0, max(-1.0, x * a + y * b + z * c)))
+        shortest_s = angle * self.swing[0] / PHASE_RATE + EASE_S
+        if n >= self._n(shortest_s) or shortest_s <= SLOWED_S:
+            self._place(target, sample, max(n, self._n(shortest_s)))
+            return
+        power = float(self.state.level[TO])
+        fall, dark = self._n(DIP_S), self._n(DARK_S)
+        self._tell(sample, "level", power=0.0, n=fall)
+        self._place(target, sample + fall + dark, 0)
+        self.returns_at = sample + fall + 2 * dark
+        self._level(sample, power, max(fall, n - fall - 2 * dark))
+
+    def _place(self, target: Target, sample: int, n: int) -> None:
+        self.target = target
+        if target.point_m is not None:
+            self._tell(sample, "aim", point_m=list(target.point_m), n=n)
+        else:
+            self._tell(sample, "aim", direction=list(target.unit()), n=n)
+
+    def _reach(self, reach: float | str, sample: int, n: int) -> None:
+        per_m: float | str = "aim"
+        if reach != "aim":
+            per_m = 0.0 if reach == "far" else 1.0 / float(reach)
+        if not self.sounding(sample) or sample < self.returns_at:
+            self._tell(max(sample, self.returns_at - 1), "reach", per_m=per_m, n=0)
+            return
+        goal = 0.0 if per_m == "aim" else float(per_m)
+        change = abs(goal - self.state.reach_per_m_at(sample)) if per_m != "aim" else 2.0
+        shortest_s = EASE_S + 0.5 * np.pi * change * self.swing[1] / PHASE_RATE
+        self._tell(sample, "reach", per_m=per_m, n=max(n, self._n(shortest_s)))

@@ -1,0 +1,353 @@
+"""The player: events and time in, records out. It reads no clock: `sample` is always an argument.
+
+`handle` answers an event at once; `advance` does what is due by itself up to a sample: acts placed
+after their GO, follow-ons, the ends of one-shot sounds. Both return records in sample order per
+beam; a refusal is a record too, with its reason.
+"""
+
+from __future__ import annotations
+
+from collections import deque
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from functools import partial
+from typing import Any
+
+import numpy as np
+
+from beamctl.acoustics.air import Air, sound_speed_m_s
+from beamctl.show import events
+from beamctl.show.beamstate import MIN_GLIDE_S, BeamState
+from beamctl.show.plan import BeamPlan, swing_of
+from beamctl.show.records import Record
+from beamctl.show.sheet import Act, Cue
+from beamctl.show.show import Show
+from beamctl.show.standby import after_go, stepped
+from beamctl.show.states import CUE, OUTPUT, CueState, Output, Reason, refusal
+from beamctl.show.targets import Target, target_of
+
+READY_S = 5.0
+RESTORE_RISE_S = 0.25
+TOKENS_KEPT = 4096
+
+
+@dataclass(slots=True)
+class Run:
+    """A fired cue: what it still has to do, by absolute sample."""
+
+    ref: str
+    started: int
+    acts: deque[tuple[int, Act]]
+    follow: tuple[int, str] | None
+    settles_at: int  # when the last glide it started is over
+
+    def due(self) -> int | None:
+        """Sample of the next act."""
+        return self.acts[0][0] if self.acts else None
+
+
+@dataclass
+class Player:
+    """State of a show being played; every change goes through `handle` and `advance`."""
+
+    show: Show
+    output: Output = "COLD"
+    standby: str = ""
+    newest: str = ""
+    newest_at: int | None = None
+    held_at: int | None = None
+    ready_until: int = -1
+    states: dict[str, CueState] = field(default_factory=dict)  # resting cues are not in it
+    runs: dict[str, Run] = field(default_factory=dict)
+    plans: dict[str, BeamPlan] = field(default_factory=dict)
+    barred: Mapping[str, str] = field(default_factory=dict)  # cue → why
+    _tokens: dict[int, None] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        self.rate_hz = self.show.rig.rate_hz
+        self._cues = {cue.ref: cue for cue in self.show.sheet.cue}
+        speed = sound_speed_m_s(Air(**self.show.house.air.model_dump()))
+        for name, beam in self.show.sheet.beam.items():
+            wavenumber = 2.0 * np.pi * self.show.rig.panel[beam.panel].carrier_hz / speed
+            swing = swing_of(self.show.cells[beam.panel], wavenumber)
+            self.plans[name] = BeamPlan(name, self.rate_hz, swing, BeamState(self.rate_hz))
+        self._targets: dict[Act, Target] = {}
+        for cue in self.show.sheet.cue:
+            for act in cue.act:
+                if act.aims:
+                    panel = self.show.rig.panel[self.show.panel_of(act.beam)]
+                    self._targets[act] = target_of(act, self.show.house, panel)
+
+    # -- what may be asked -------------------------------------------------------------------
+
+    def handle(self, event: events.Event, sample: int) -> list[Record]:
+        """Records that answer `event` at `sample`."""
+        return _HANDLERS[type(event)](self, event, sample)
+
+    def advance(self, until: int) -> list[Record]:
+        """Records of all that is due by itself before sample `until`, in order."""
+        records: list[Record] = []
+        while self.held_at is None and (due := self._next_due()) is not None and due[0] < until:
+            records += due[1](due[0])
+        if self.held_at is not None:
+            while (ending := self._next_end()) is not None and (ending.ends_at or 0) < until:
+                records += self._end(ending, ending.ends_at or 0)
+        return records + self._settle(until)
+
+    def sink(self, event: str, sample: int) -> list[Record]:
+        """The sink opened, was lost or closed: "sink-open", "sink-lost", "sink-close"."""
+        if (goal := OUTPUT.get((self.output, event))) is None:
+            return []
+        return self._to(goal, sample, event)
+
+    # -- events ------------------------------------------------------------------------------
+
+    def _go(self, event: events.Go, sample: int) -> list[Record]:
+        ref = event.ref or self.standby
+        if event.token and event.token in self._tokens:
+            return self._refuse(event, sample, "repeat", f"token {event.token} was used")
+        if (self.output, "go") not in OUTPUT:
+            why = f"{self.output}: * then Enter opens the output"
+            return self._refuse(event, sample, refusal(self.output), why)
+        if not ref:
+            return self._refuse(event, sample, "not-standing-by", "no cue stands by")
+        if ref not in self._cues:
+            return self._refuse(event, sample, "unknown-ref", f"no cue {ref} in the sheet")
+        if ref in self.barred:
+            return self._refuse(event, sample, "barred", f"cue {ref}: {self.barred[ref]}")
+        if self.held_at is not None:
+            return self._refuse(event, sample, "busy", "the show is held; carry on first")
+        if (self.state(ref), "go") not in CUE:
+            return self._refuse(event, sample, "busy", f"cue {ref} is {self.state(ref)}")
+        if event.token:
+            self._tokens[event.token] = None
+            if len(self._tokens) > TOKENS_KEPT:
+                del self._tokens[next(iter(self._tokens))]
+        records = self._fire(ref, sample, event.who)
+        if ref == self.standby or not self.standby:
+            self._stand(after_go(self.show.sheet, ref, self.state))
+        return records
+
+    def _fire(self, ref: str, sample: int, who: str) -> list[Record]:
+        """Start cue `ref`: its GO record and the acts that are due at once."""
+        cue = self._cues[ref]
+        for run in self.runs.values():
+            if run.follow is not None and run.follow[1] == ref:
+                run.follow = None
+        self._turn(ref, "go")
+        acts = sorted(cue.act, key=lambda act: act.at_s)
+        at = deque((sample + round(act.at_s * self.rate_hz), act) for act in acts)
+        self.runs[ref] = Run(ref, sample, at, self._follow(cue, sample), sample)
+        self.newest, self.newest_at = ref, sample
+        records = [Record(sample, "go", cue=ref, who=who)]
+        while self.runs[ref].due() == sample:
+            records += self._act(ref, sample)
+        return records
+
+    def _follow(self, cue: Cue, sample: int) -> tuple[int, str] | None:
+        if cue.then is None or cue.then_at_s is None:
+            return None
+        return sample + round(cue.then_at_s * self.rate_hz), cue.then
+
+    def _act(self, ref: str, sample: int) -> list[Record]:
+        run = self.runs[ref]
+        _, act = run.acts.popleft()
+        plan = self.plans[act.beam]
+        seconds = self.show.sounds[act.sound].seconds if act.sound is not None else 0.0
+        owner = plan.owner
+        records = plan.perform(act, sample, ref, self._targets.get(act), seconds)
+        self._lengthen(ref, records)
+        if plan.owner != owner:
+            self._lengthen(owner, records)
+        return records
+
+    def _end(self, plan: BeamPlan, sample: int) -> list[Record]:
+        owner = plan.owner
+        records = plan.end(sample)
+        self._lengthen(owner, records)
+        return records
+
+    def _lengthen(self, ref: str, records: list[Record]) -> None:
+        """Cue `ref` is not done before these records have run their course."""
+        if ref in self.runs:
+            ends = [r.sample + int(r.args.get("n", 0)) for r in records]
+            self.runs[ref].settles_at = max([self.runs[ref].settles_at, *ends])
+
+    def _stand_by(self, event: events.StandBy, sample: int) -> list[Record]:
+        if event.ref and event.ref not in self._cues:
+            return self._refuse(event, sample, "unknown-ref", f"no cue {event.ref} in the sheet")
+        if event.ref and (self.state(event.ref), "stand-by") not in CUE:
+            if event.ref == self.standby:
+                return []
+            return self._refuse(
+                event, sample, "busy", f"cue {event.ref} is {self.state(event.ref)}"
+            )
+        self._stand(event.ref)
+        return [Record(sample, "standby", cue=event.ref, who=event.who)]
+
+    def _step(self, event: events.Step, sample: int) -> list[Record]:
+        goal = stepped(self.show.sheet, self.standby, event.by, self.state)
+        return self._stand_by(events.StandBy(event.who, goal), sample) if goal else []
+
+    def _ready(self, event: events.Ready, sample: int) -> list[Record]:
+        if self.output not in ("SHUT", "HUSHED"):
+            why = f"nothing to arm or restore while {self.output}"
+            return self._refuse(event, sample, refusal(self.output), why)
+        self.ready_until = sample + round(READY_S * self.rate_hz)
+        return [Record(sample, "ready", who=event.who)]
+
+    def _confirm(self, event: events.Confirm, sample: int) -> list[Record]:
+        if sample > self.ready_until:
+            return self._refuse(event, sample, "not-armed", "press * first, then Enter within 5 s")
+        self.ready_until = -1
+        return self._open("arm" if self.output == "SHUT" else "restore", event, sample)
+
+    def _restore(self, event: events.Restore, sample: int) -> list[Record]:
+        return self._open("restore", event, sample)
+
+    def _open(self, act: str, event: events.Event, sample: int) -> list[Record]:
+        goal = OUTPUT.get((self.output, act))
+        if goal is None:
+            why = f"cannot {act} while {self.output}"
+            return self._refuse(event, sample, refusal(self.output), why)
+        rise = round(RESTORE_RISE_S * self.rate_hz)
+        gate = Record(sample, "gate", args={"open": 1, "n": rise})
+        if act == "arm" and not self.standby and self.show.sheet.cue:
+            self._stand(self.show.sheet.cue[0].ref)
+        return [*self._to(goal, sample, act, event.who), gate]
+
+    def _hush(self, event: events.Hush, sample: int) -> list[Record]:
+        self.ready_until = -1
+        for run in self.runs.values():
+            run.follow = None
+        gate = Record(sample, "gate", args={"open": 0, "n": round(MIN_GLIDE_S * self.rate_hz)})
+        return [gate, *self._to(OUTPUT[self.output, "hush"], sample, "hush", event.who)]
+
+    def _hold(self, event: events.Hold, sample: int) -> list[Record]:
+        if self.held_at is not None:
+            return self._refuse(event, sample, "busy", "the show is held already")
+        self.held_at = sample
+        records = [Record(sample, "hold", who=event.who)]
+        for plan in self.plans.values():
+            if plan.sounding(sample):
+                records += plan.freeze(sample)
+        return records
+
+    def _carry_on(self, event: events.CarryOn, sample: int) -> list[Record]:
+        if self.held_at is None:
+            return self._refuse(event, sample, "busy", "the show is not held")
+        wait, self.held_at = sample - self.held_at, None
+        for run in self.runs.values():
+            run.acts = deque((at + wait, act) for at, act in run.acts)
+            run.follow = run.follow and (run.follow[0] + wait, run.follow[1])
+            run.settles_at += wait
+        told = [Record(sample, "carry-on", who=event.who)]
+        return told + [r for p in self.plans.values() for r in p.thaw(sample)]
+
+    def _tail(self, event: events.Tail, sample: int) -> list[Record]:
+        running = [r.ref for r in self.runs.values() if self.state(r.ref) == "running"]
+        ref = event.ref or (running[-1] if running else "")
+        if ref not in self._cues:
+            what = f"no cue {ref} in the sheet" if ref else "no cue is running"
+            return self._refuse(event, sample, "unknown-ref" if ref else "busy", what)
+        if (self.state(ref), "tail") not in CUE:
+            return self._refuse(event, sample, "busy", f"cue {ref} is {self.state(ref)}")
+        self._turn(ref, "tail")
+        run = self.runs[ref]
+        run.acts.clear()
+        run.follow = None
+        run.settles_at = sample + round(event.fall_s * self.rate_hz)
+        records = [Record(sample, "tail", cue=ref, who=event.who)]
+        for plan in self.plans.values():
+            if plan.owner == ref:
+                records += plan.fall(sample, event.fall_s, ref)
+        return records
+
+    def _acknowledge(self, event: events.Acknowledge, sample: int) -> list[Record]:
+        return [Record(sample, "acknowledge", who=event.who)]
+
+    # -- what happens by itself ---------------------------------------------------------------
+
+    def _next_due(self) -> tuple[int, Callable[[int], list[Record]]] | None:
+        """Sample and deed of the next thing that happens by itself."""
+        due: list[tuple[int, Callable[[int], list[Record]]]] = []
+        for run in self.runs.values():
+            if (at := run.due()) is not None:
+                due.append((at, partial(self._act, run.ref)))
+            if run.follow is not None:
+                due.append((run.follow[0], partial(self._follow_on, run)))
+        ending = self._next_end()
+        if ending is not None and ending.ends_at is not None:
+            due.append((ending.ends_at, partial(self._end, ending)))
+        return min(due, key=lambda item: item[0], default=None)
+
+    def _next_end(self) -> BeamPlan | None:
+        ending = [p for p in self.plans.values() if p.ends_at is not None]
+        return min(ending, key=lambda p: p.ends_at or 0, default=None)
+
+    def _follow_on(self, run: Run, sample: int) -> list[Record]:
+        ref = run.follow[1] if run.follow else ""
+        run.follow = None
+        event = events.Go(f"follow-on of {run.ref}", ref)
+        standby = self.standby
+        records = self._go(event, sample)
+        if standby not in ("", ref):
+            self._stand(standby)
+        return records
+
+    def _settle(self, sample: int) -> list[Record]:
+        """Finish the cues that have nothing left to do."""
+        records = []
+        for run in list(self.runs.values()):
+            sounds = any(p.owner == run.ref for p in self.plans.values())
+            if run.acts or run.follow or sounds or run.settles_at >= sample:
+                continue
+            del self.runs[run.ref]
+            self._turn(run.ref, "settled")
+            records.append(Record(run.settles_at, "done", cue=run.ref))
+        return records
+
+    # -- small things ---------------------------------------------------------------------------
+
+    def state(self, ref: str) -> CueState:
+        """State of a cue of the sheet."""
+        return "barred" if ref in self.barred else self.states.get(ref, "resting")
+
+    def _turn(self, ref: str, event: str) -> None:
+        state = CUE[self.state(ref), event]
+        self.states.pop(ref, None)
+        if state != "resting":
+            self.states[ref] = state
+
+    def _stand(self, ref: str) -> None:
+        if self.standby and self.state(self.standby) == "standing by":
+            self._turn(self.standby, "stand-down")
+        self.standby = ref
+        if ref and (self.state(ref), "stand-by") in CUE:
+            self._turn(ref, "stand-by")
+
+    def _to(self, goal: Output, sample: int, why: str, who: str = "") -> list[Record]:
+        before, self.output = self.output, goal
+        if before == goal:
+            return []
+        args = {"from": before, "to": goal, "by": why}
+        return [Record(sample, "output", who=who, args=args)]
+
+    def _refuse(self, event: events.Event, sample: int, reason: Reason, text: str) -> list[Record]:
+        args: dict[str, Any] = {"asked": type(event).__name__.lower(), "reason": reason}
+        return [Record(sample, "refused", who=event.who, args=args | {"text": text})]
+
+
+_HANDLERS: dict[type[events.Event], Callable[[Player, Any, int], list[Record]]] = {
+    events.Go: Player._go,
+    events.StandBy: Player._stand_by,
+    events.Step: Player._step,
+    events.Ready: Player._ready,
+    events.Confirm: Player._confirm,
+    events.Restore: Player._restore,
+    events.Hush: Player._hush,
+    events.Hold: Player._hold,
+    events.CarryOn: Player._carry_on,
+    events.Tail: Player._tail,
+    events.Acknowledge: Player._acknowledge,
+}

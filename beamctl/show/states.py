@@ -1,0 +1,66 @@
+"""The two state machines, each one table: what the output may do, and what a cue may do.
+
+A missing entry is a refusal; `refusal` gives its reason word. Nothing else decides a transition.
+"""
+
+from __future__ import annotations
+
+from typing import Literal
+
+Output = Literal["COLD", "SHUT", "OPEN", "HUSHED", "TRIPPED", "LOST"]
+CueState = Literal["resting", "standing by", "running", "tailing", "done", "barred"]
+
+Reason = Literal[
+    "not-armed",
+    "not-standing-by",
+    "barred",
+    "tripped",
+    "unknown-ref",
+    "repeat",
+    "too-late",
+    "too-early",
+    "not-allowed",
+    "bad-type",
+    "locked",
+    "busy",
+]
+
+OUTPUT: dict[tuple[Output, str], Output] = {
+    ("COLD", "sink-open"): "SHUT",
+    ("SHUT", "arm"): "OPEN",
+    ("OPEN", "hush"): "HUSHED",
+    ("SHUT", "hush"): "SHUT",
+    ("COLD", "hush"): "COLD",
+    ("HUSHED", "hush"): "HUSHED",
+    ("TRIPPED", "hush"): "TRIPPED",
+    ("LOST", "hush"): "LOST",
+    ("HUSHED", "restore"): "OPEN",
+    ("OPEN", "go"): "OPEN",
+    ("SHUT", "sink-lost"): "LOST",
+    ("OPEN", "sink-lost"): "LOST",
+    ("HUSHED", "sink-lost"): "LOST",
+    ("TRIPPED", "sink-lost"): "LOST",
+    ("LOST", "sink-open"): "SHUT",
+    ("SHUT", "sink-close"): "COLD",
+    ("OPEN", "sink-close"): "COLD",
+    ("HUSHED", "sink-close"): "COLD",
+    ("TRIPPED", "sink-close"): "COLD",
+    ("LOST", "sink-close"): "COLD",
+}
+
+CUE: dict[tuple[CueState, str], CueState] = {
+    ("resting", "stand-by"): "standing by",
+    ("done", "stand-by"): "standing by",
+    ("standing by", "stand-down"): "resting",
+    ("resting", "go"): "running",
+    ("standing by", "go"): "running",
+    ("done", "go"): "running",
+    ("running", "tail"): "tailing",
+    ("running", "settled"): "done",
+    ("tailing", "settled"): "done",
+}
+
+
+def refusal(output: Output) -> Reason:
+    """Why nothing may sound in this output state."""
+    return "tripped" if output == "TRIPPED" else "not-armed"
