@@ -88,3 +88,12 @@ class Snapshot:
     panels: tuple[PanelView, ...]
     engine: EngineView
     notices: tuple[str, ...]  # unacknowledged, oldest first
+
+
+@dataclass(frozen=True, slots=True)
+class Answer:
+    """What became of an action. `reason` is a refusal's word, "" when it was done."""
+
+    done: bool
+    reason: str = ""
+    text: str = ""

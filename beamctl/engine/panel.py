@@ -7,6 +7,7 @@ that changed the aim, so the samples do not depend on how the steps fall.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import NamedTuple
 
 import numpy as np
@@ -125,7 +126,7 @@ class Panel:
         if self.buffers.active.any():
             _shift(self.buffers)
 
-    def step(self, sample: int, begin: int, end: int, sounds: dict[str, F32]) -> None:
+    def step(self, sample: int, begin: int, end: int, sounds: Mapping[str, F32]) -> None:
         """Work out positions begin … end of the segment at `sample` into `buffers.out`."""
         if not self.buffers.active.any():
             self.buffers.out[:, begin:end] = 0.0
@@ -136,7 +137,7 @@ class Panel:
         advance(self.buffers, self.wiring, sample, begin, end)
 
     def _read_programme(
-        self, b: int, state: BeamState, sample: int, begin: int, end: int, sounds: dict[str, F32]
+        self, b: int, state: BeamState, sample: int, begin: int, end: int, sounds: Mapping[str, F32]
     ) -> None:
         first, last = (begin + 1) // 2, (end + 1) // 2
         target = self.buffers.programme[b, :, first:last]

@@ -26,14 +26,15 @@ AIMING = frozenset(("aim", "reach", "freeze", "thaw"))
 class Renderer:
     """Renders every feed of a show; the gate is closed until a record opens it.
 
-    sounds  prepared analytic signals by sound name, (frames, 2) float32 at half the device rate
+    sounds  prepared analytic signals by panel (their band is its carrier's) and sound name,
+            (frames, 2) float32 at half the device rate
     """
 
-    def __init__(self, show: Show, sounds: Mapping[str, NDArray[np.float32]]) -> None:
+    def __init__(self, show: Show, sounds: Mapping[str, Mapping[str, NDArray[np.float32]]]) -> None:
         self.position = 0
         self.rate_hz = show.rig.rate_hz
         self.channels = show.channels
-        self._sounds = dict(sounds)
+        self._sounds = sounds
         air = Air(**show.house.air.model_dump())
         self._beams: dict[str, tuple[Panel, int]] = {}
         self.panels: dict[str, Panel] = {}
@@ -106,7 +107,7 @@ class Renderer:
         gain_ramp(gate, self._gate.level, self.position, n)
         out[:] = 0.0
         for name, panel in self.panels.items():
-            panel.step(segment, offset, offset + n, self._sounds)
+            panel.step(segment, offset, offset + n, self._sounds[name])
             first, feeds = self._first[name], panel.buffers.out.shape[0]
             if panel.buffers.active.any():
                 np.multiply(

@@ -67,9 +67,9 @@ class House(Model):
 
     format: Literal[1]
     air: AirSpec = AirSpec()
-    spot: dict[Name, Spot] = {}
-    block: dict[Name, Block] = {}
-    surface: dict[Name, Surface] = {}
+    spot: dict[Name, Spot] = Field(default_factory=dict)
+    block: dict[Name, Block] = Field(default_factory=dict)
+    surface: dict[Name, Surface] = Field(default_factory=dict)
 
     def seats(self) -> dict[str, tuple[float, float, float]]:
         """Every seat of every block; on a repeated name the first block's seat is kept."""

@@ -3,14 +3,34 @@
 from __future__ import annotations
 
 import ipaddress
-from typing import Annotated, Literal, Self
+import re
+from typing import Annotated, Literal
 
-from pydantic import Field, model_validator
+from pydantic import AfterValidator, Field
 
 from beamctl.show.fields import Model, Text
 
 Table = Literal["irpa-1984-public", "irpa-1984-workers", "health-canada-1991"]
 Role = Literal["read", "trigger", "aim", "hush"]
+
+
+def _check_listen(text: str) -> str:
+    address, _, port = text.rpartition(":")
+    if not (address and re.fullmatch("[0-9]{1,5}", port) and 0 < int(port) < 65_536):
+        raise ValueError('"ADDRESS:PORT" with a port from 1 to 65535')
+    return text
+
+
+def _check_network(text: str) -> str:
+    try:
+        ipaddress.ip_network(text, strict=False)
+    except ValueError:
+        raise ValueError('an address or a network such as "10.0.0.0/24"') from None
+    return text
+
+
+Listen = Annotated[str, AfterValidator(_check_listen)]
+Network = Annotated[str, AfterValidator(_check_network)]
 
 
 class Signed(Model):
@@ -39,14 +59,10 @@ class Wire(Model):
     """wire.toml."""
 
     format: Literal[1]
-    listen: str = Field("127.0.0.1:61740", pattern=r"^.+:[0-9]{1,5}$")
+    listen: Listen = "127.0.0.1:61740"
     rate_per_s: float = Field(50.0, gt=0.0, le=10_000.0)
     heartbeat_s: float = Field(1.0, ge=0.1, le=60.0)
     strict_standby: bool = False
-    allow: dict[str, Annotated[tuple[Role, ...], Field(strict=False)]] = {}
-
-    @model_validator(mode="after")
-    def _addresses(self) -> Self:
-        for address in self.allow:
-            ipaddress.ip_network(address, strict=False)
-        return self
+    allow: dict[Network, Annotated[tuple[Role, ...], Field(strict=False)]] = Field(
+        default_factory=dict
+    )

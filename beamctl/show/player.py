@@ -210,7 +210,7 @@ class Player:
         if goal is None:
             why = f"cannot {act} while {self.output}"
             return self._refuse(event, sample, refusal(self.output), why)
-        rise = round(RESTORE_RISE_S * self.rate_hz)
+        rise = round((RESTORE_RISE_S if act == "restore" else MIN_GLIDE_S) * self.rate_hz)
         gate = Record(sample, "gate", args={"open": 1, "n": rise})
         if act == "arm" and not self.standby and self.show.sheet.cue:
             self._stand(self.show.sheet.cue[0].ref)

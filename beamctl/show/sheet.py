@@ -69,7 +69,9 @@ class Act(Model):
 
     def _only_a_fall(self) -> None:
         if self.aims or self.sound is not None or self.trim_db is not None:
-            raise ValueError("fall_s stands alone: it ends the sound; use a second act for the rest")
+            raise ValueError(
+                "fall_s stands alone, it ends the sound: use a second act for the rest"
+            )
 
 
 class Cue(Model):

@@ -18,7 +18,7 @@ def rendered(law: str, depth: float, tone_hz: float, moving: bool, columns: int,
     """A renderer at work, and the samples (n, F) of a window after everything has settled."""
     cells = grid(columns, 8)
     show = make_show(cells=cells, q=q, max_volts=5.0)
-    renderer = Renderer(show, {"tone": analytic_tone(tone_hz, 1.0)})
+    renderer = Renderer(show, {"p": {"tone": analytic_tone(tone_hz, 1.0)}})
     first = np.array([np.sin(-0.3), np.cos(-0.3), 0.0])
     renderer.put(Record(0, "gate", args={"open": 1, "n": 3840}))
     renderer.put(Record(START, "aim", "a", args={"direction": first.tolist(), "n": 0}))
@@ -69,7 +69,7 @@ def test_every_block_size_gives_the_same_bits():
     outs = []
     for block in (256, 1, 64, 333, 1024):
         show = make_show(("a", "b"))
-        renderer = Renderer(show, {"tone": analytic_tone(700.0, 0.05)})
+        renderer = Renderer(show, {"p": {"tone": analytic_tone(700.0, 0.05)}})
         renderer.put(Record(0, "gate", args={"open": 1, "n": 3840}))
         for beam, at in (("a", 101), ("b", 777)):
             renderer.put(Record(at, "aim", beam, args={"direction": [0.0, 1.0, 0.0], "n": 0}))
