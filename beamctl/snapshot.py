@@ -68,6 +68,8 @@ class EngineView:
     late: int  # times the sink ran dry
     load_pct: float  # share of the time that rendering takes
     compile_s: float
+    busy: str = ""  # what it is getting ready, "sound bell.flac, 3 of 7"; "" when it is ready
+    route: str = ""  # how samples reach the device
 
 
 @dataclass(frozen=True, slots=True)

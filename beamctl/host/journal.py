@@ -1,0 +1,106 @@
+"""The journal: one line per record, appended as it happens, readable up to the last whole line.
+
+The first line says what was played: show folder, digests of its files, versions. The rest are the
+records exactly as the engine took them. `left` closes it: how many samples went to the sink, and
+their SHA-256, which `replay` must reproduce.
+"""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import Any, TextIO
+
+from beamctl import __version__
+from beamctl.errors import DeviceError, ShowError
+from beamctl.show.records import Record
+from beamctl.show.show import Show
+
+LAYOUT = 1
+
+
+@dataclass(frozen=True, slots=True)
+class Header:
+    """What a journal was made from."""
+
+    folder: str
+    digests: dict[str, str]
+    rate_hz: int
+    channels: int
+
+
+class Journal:
+    """Appends records to one file; a full disk is told by `problem`, and never stops a show."""
+
+    def __init__(self, path: Path, show: Show, sink: str) -> None:
+        self.path = path
+        self.problem = ""
+        header = {
+            "beamctl": __version__,
+            "journal": LAYOUT,
+            "began": datetime.now(UTC).isoformat(timespec="milliseconds"),
+            "folder": show.folder,
+            "digests": dict(show.digests),
+            "rate_hz": show.rig.rate_hz,
+            "channels": show.channels,
+            "sink": sink,
+        }
+        try:
+            self._file: TextIO = path.open("x", encoding="utf-8")
+        except OSError as error:
+            raise DeviceError(
+                f"journal {path}: {error.strerror}", "name another place with --journal"
+            ) from error
+        self._line(json.dumps(header, ensure_ascii=False))
+
+    def write(self, records: Iterable[Record]) -> None:
+        """Append records."""
+        for record in records:
+            self._line(record.to_json())
+
+    def close(self) -> None:
+        """Let go of the file."""
+        self._file.close()
+
+    def _line(self, text: str) -> None:
+        try:
+            self._file.write(text + "\n")
+            self._file.flush()
+        except OSError as error:
+            self.problem = f"journal {self.path.name}: {error.strerror}"
+
+
+def read_journal(path: Path) -> tuple[Header, Iterator[Record]]:
+    """Header and records of a journal; a last line that was cut short is passed over.
+
+    ShowError when the file is no journal.
+    """
+    try:
+        lines = path.read_text(encoding="utf-8").splitlines()
+        first: dict[str, Any] = json.loads(lines[0])
+        if first["journal"] != LAYOUT:
+            raise ValueError(first["journal"])
+        header = Header(first["folder"], first["digests"], first["rate_hz"], first["channels"])
+    except OSError as error:
+        raise ShowError(f"{path}: {error.strerror}", "name a journal that exists") from error
+    except (ValueError, KeyError, IndexError, TypeError) as error:
+        raise ShowError(
+            f"{path}: not a journal",
+            "journals end in .jsonl; `beamctl host` says where it keeps them",
+        ) from error
+    return header, _records(path, lines[1:])
+
+
+def _records(path: Path, lines: list[str]) -> Iterator[Record]:
+    for number, line in enumerate(lines, start=2):
+        try:
+            yield Record.from_json(line)
+        except ValueError as error:
+            if number == len(lines) + 1:
+                return
+            raise ShowError(
+                f"{path}:{number}: not a record", "the journal is damaged before its end"
+            ) from error

@@ -1,0 +1,89 @@
+"""The same player and renderer without a clock: `render` and `replay`."""
+
+from __future__ import annotations
+
+import hashlib
+from collections.abc import Callable, Iterable, Iterator
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from beamctl.engine.renderer import Renderer
+from beamctl.errors import ShowError
+from beamctl.files.reader import load_show
+from beamctl.host.journal import read_journal
+from beamctl.host.loading import prepare_sounds
+from beamctl.host.warming import warm
+from beamctl.show.events import Confirm, Go, Ready
+from beamctl.show.player import Player
+from beamctl.show.records import Record
+from beamctl.show.show import Show
+
+Progress = Callable[[str, int, int], None]
+Write = Callable[[NDArray[np.float32]], None]
+
+BLOCK = 4096
+
+
+def play_through(show: Show, gos: Iterable[tuple[int, str]], until: int) -> Iterator[Record]:
+    """Records of a show with GOs (sample, cue) given in advance, armed at sample 0.
+
+    The output is open from the first sample on; ShowError when a GO is refused.
+    """
+    player = Player(show)
+    yield from player.sink("sink-open", 0)
+    yield from player.handle(Ready("render"), 0)
+    yield from player.handle(Confirm("render"), 0)
+    for sample, ref in sorted(gos):
+        yield from player.advance(sample)
+        for record in player.handle(Go("render", ref), sample):
+            if record.what == "refused":
+                raise ShowError(
+                    f"--go {ref}@{sample}smp refused, {record.args['reason']}",
+                    str(record.args["text"]),
+                )
+            yield record
+    yield from player.advance(until)
+
+
+def render(
+    show: Show, records: Iterable[Record], samples: int, write: Write, progress: Progress
+) -> str:
+    """Render `samples` of every channel through `write`; returns the SHA-256 of what was written."""
+    sounds = prepare_sounds(show, progress)
+    progress("compiled code", 0, 1)
+    warm(show)
+    renderer = Renderer(show, sounds)
+    for record in records:
+        renderer.put(record)
+    digest = hashlib.sha256()
+    block = np.zeros((BLOCK, show.channels), np.float32)
+    while renderer.position < samples:
+        part = block[: min(BLOCK, samples - renderer.position)]
+        renderer.render(part)
+        digest.update(part.data)
+        write(part)
+        progress("rendering", renderer.position, samples)
+    return digest.hexdigest()
+
+
+def replay(path: Path, write: Write, progress: Progress) -> tuple[str, str]:
+    """Render a journal again; returns its SHA-256 and the one that the journal ends with.
+
+    ShowError when the show has changed since, or the journal was cut before its end.
+    """
+    header, kept = read_journal(path)
+    show = load_show(Path(header.folder))
+    changed = [n for n, d in show.digests.items() if header.digests.get(n) != d]
+    if changed:
+        raise ShowError(
+            f"{header.folder}: {', '.join(changed)} changed since {path.name}",
+            "put the files back as they were to hear what was sent",
+        )
+    records = list(kept)
+    if not records or records[-1].what != "left":
+        raise ShowError(f"{path}: ends before its `left` line", "the host was cut off")
+    left = records[-1]
+    digest = render(show, records, left.sample, write, progress)
+    return digest, str(left.args["sha256"])

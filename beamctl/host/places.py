@@ -1,0 +1,55 @@
+"""Where the local files of a running show are: its socket, its status block, its journals."""
+
+from __future__ import annotations
+
+import hashlib
+import os
+import re
+import tempfile
+from datetime import datetime
+from pathlib import Path
+
+from platformdirs import user_runtime_path, user_state_path
+
+
+def runtime_folder() -> Path:
+    """A folder that only this user may enter, for sockets and shared memory."""
+    named = os.environ.get("BEAMCTL_RUNTIME")
+    folder = Path(named) if named else user_runtime_path("beamctl")
+    try:
+        folder.mkdir(mode=0o700, parents=True, exist_ok=True)
+    except OSError:
+        folder = Path(tempfile.gettempdir()) / f"beamctl-{os.getuid()}"
+        folder.mkdir(mode=0o700, exist_ok=True)
+    if hasattr(os, "getuid") and folder.stat().st_uid != os.getuid():
+        raise PermissionError(f"{folder} belongs to another user")
+    folder.chmod(0o700)
+    return folder
+
+
+def show_key(show: Path) -> str:
+    """Short name of a show folder, the same for every process."""
+    return hashlib.sha256(str(show.resolve()).encode()).hexdigest()[:16]
+
+
+def socket_address(show: Path) -> str:
+    """Address of the host that runs `show`."""
+    if os.name == "nt":
+        return rf"\\.\pipe\beamctl-{show_key(show)}"
+    return str(runtime_folder() / f"{show_key(show)}.sock")
+
+
+def state_folder() -> Path:
+    """Where journals and logs are kept."""
+    named = os.environ.get("BEAMCTL_STATE")
+    folder = Path(named) if named else user_state_path("beamctl")
+    folder.mkdir(parents=True, exist_ok=True)
+    return folder
+
+
+def new_journal(title: str, now: datetime) -> Path:
+    """A journal name that sorts by time and tells the show."""
+    slug = re.sub(r"[^a-z0-9]+", "-", title.lower()).strip("-") or "show"
+    folder = state_folder() / "journals"
+    folder.mkdir(exist_ok=True)
+    return folder / f"{now:%Y%m%d-%H%M%S}-{slug}-{os.getpid()}.jsonl"
