@@ -1,4 +1,4 @@
-"""The frozen picture of everything a screen or a reply may show, made by the host 20 times a second.
+"""The frozen picture of all that a screen or a reply may show, made by the host 20 times a second.
 
 Texts that change only with an edit (titles, notes) travel once, as `SheetView`.
 """

@@ -32,7 +32,7 @@ def cache_folder() -> Path:
     return (Path(root) if root else user_cache_path("beamctl")) / "compiled" / digest[:16]
 
 
-numba.config.CACHE_DIR = str(cache_folder())
+numba.config.CACHE_DIR = str(cache_folder())  # type: ignore[attr-defined]
 
 compiled = numba.njit(cache=True, nogil=True, error_model="numpy", fastmath={"contract"})
 

@@ -182,7 +182,7 @@ def _wiring(spec: PanelSpec, cells: CellMap, air: Air, rate_hz: int) -> Wiring:
         row_taps=kernels.row_taps(),
         ramp=np.arange(SEGMENT, dtype=np.float32),
         cells=np.ascontiguousarray(cells.at_m, np.float64),
-        back=cells.polarity * np.exp(-1j * turn) * trim[cells.feed],
+        back=(cells.polarity * trim[cells.feed] * np.exp(-1j * turn)).astype(np.complex128),
         feed=np.ascontiguousarray(cells.feed, np.int64),
         share=np.where(live, 1.0 / np.maximum(count[cells.feed], 1), 0.0),
         steer=(
@@ -227,7 +227,7 @@ def _buffers(wiring: Wiring, feeds: int, rate_hz: int, beams: int) -> Buffers:
         still=np.zeros(beams, np.bool_),
         piece=np.zeros(beams, np.int64),
         acc=f32(2, feeds, SEGMENT),
-        total=f32(SEGMENT),
+        total=np.ones(SEGMENT, np.float32),
         carrier=f32(2, SEGMENT),
         out=f32(feeds, SEGMENT),
     )

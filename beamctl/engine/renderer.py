@@ -74,6 +74,18 @@ class Renderer:
             self._step(out[done : done + n], offset)
             done += n
 
+    def meter(self, block: NDArray[np.float32]) -> list[tuple[float, float]]:
+        """Per panel: feed peak of `block`, just rendered, and the segment's lowest shared gain."""
+        told = []
+        for name, panel in self.panels.items():
+            first, feeds = self._first[name], panel.buffers.out.shape[0]
+            if not panel.buffers.active.any():
+                told.append((0.0, 1.0))
+                continue
+            peak = float(np.abs(block[:, first : first + feeds]).max())
+            told.append((peak, float(panel.buffers.total.min())))
+        return told
+
     def gate_open_at(self, sample: int) -> float:
         """Gain of the gate, 0 to 1."""
         return float(np.sqrt(self._gate.power_at(sample)))

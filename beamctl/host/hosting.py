@@ -6,6 +6,7 @@ the loop's queue, so that a desk that freezes or floods cannot touch the show.
 
 from __future__ import annotations
 
+import contextlib
 import json
 import queue
 import threading
@@ -24,6 +25,7 @@ from beamctl.files.reader import load_show
 from beamctl.host.engine_process import engine_main
 from beamctl.host.journal import Journal
 from beamctl.host.link import encode
+from beamctl.host.offline import left
 from beamctl.host.picture import Picture
 from beamctl.host.places import new_journal, runtime_folder, show_key, socket_address, state_folder
 from beamctl.host.status import Status
@@ -75,6 +77,10 @@ class Host:
             self._close()
         return 0
 
+    def stop(self) -> None:
+        """End the loop at its next turn; may be called from a signal handler."""
+        self._stopping = True
+
     # -- the engine ------------------------------------------------------------------------------
 
     def _start_engine(self) -> tuple[Any, Connection]:
@@ -114,7 +120,7 @@ class Host:
             self._notices.append(" ".join(message["lost"]))
             self._lose()
         elif "gone" in message and not self._stopping and self._left is None:
-            if self._busy or self._player.output != "LOST":
+            if self._player.output != "LOST":
                 self._notices.append("engine gone: nothing sounds; end the host and start it again")
             self._lose()
 
@@ -204,7 +210,7 @@ class Host:
         if message["do"] == "snapshot":
             return self._current_snapshot()
         if message["do"] == "stop":
-            self._stopping = True
+            self.stop()
             return encode(Answer(True))
         return encode(self._act(message["name"], message["arguments"]))
 
@@ -257,10 +263,8 @@ class Host:
     def _close(self) -> None:
         """Let the engine go by its ramp, write what left, and take the socket away."""
         self._stopping = True
-        try:
+        with contextlib.suppress(OSError):
             self._line.send_bytes(encode({"stop": True}))
-        except OSError:
-            pass
         until = time.monotonic() + STOP_S
         while self._left is None and self._engine.is_alive() and time.monotonic() < until:
             self._take(TICK_S)
@@ -268,8 +272,7 @@ class Host:
         self._take(0.0)
         self._write(self._player.sink("sink-close", self._now()))
         if self._left is not None:
-            digest = {"sha256": self._left["sha256"]}
-            self._write([Record(self._left["left"], "left", args=digest)])
+            self._write([left(self._left["left"], self._left["sha256"])])
         self.journal.close()
         self._listener.close()
 

@@ -89,7 +89,7 @@ def read_journal(path: Path) -> tuple[Header, Iterator[Record]]:
     except (ValueError, KeyError, IndexError, TypeError) as error:
         raise ShowError(
             f"{path}: not a journal",
-            "journals end in .jsonl; `beamctl host` says where it keeps them",
+            "journals end in .jsonl; `beamctl host` names the one it writes",
         ) from error
     return header, _records(path, lines[1:])
 

@@ -50,7 +50,7 @@ def play_through(show: Show, gos: Iterable[tuple[int, str]], until: int) -> Iter
 def render(
     show: Show, records: Iterable[Record], samples: int, write: Write, progress: Progress
 ) -> str:
-    """Render `samples` of every channel through `write`; returns the SHA-256 of what was written."""
+    """Render `samples` of every channel through `write`; returns the SHA-256 of all of it."""
     sounds = prepare_sounds(show, progress)
     progress("compiled code", 0, 1)
     warm(show)
@@ -66,6 +66,11 @@ def render(
         write(part)
         progress("rendering", renderer.position, samples)
     return digest.hexdigest()
+
+
+def left(samples: int, digest: str) -> Record:
+    """The record that closes a journal."""
+    return Record(samples, "left", args={"sha256": digest})
 
 
 def replay(path: Path, write: Write, progress: Progress) -> tuple[str, str]:
@@ -84,6 +89,6 @@ def replay(path: Path, write: Write, progress: Progress) -> tuple[str, str]:
     records = list(kept)
     if not records or records[-1].what != "left":
         raise ShowError(f"{path}: ends before its `left` line", "the host was cut off")
-    left = records[-1]
-    digest = render(show, records, left.sample, write, progress)
-    return digest, str(left.args["sha256"])
+    last = records[-1]
+    digest = render(show, records, last.sample, write, progress)
+    return digest, str(last.args["sha256"])

@@ -11,7 +11,7 @@ import ctypes
 from typing import Any
 
 import numpy as np
-from numba import carray, cfunc, njit, types  # type: ignore[attr-defined]
+from numba import carray, cfunc, njit, types
 from numba.extending import intrinsic
 
 WRITTEN, FLOWING = 0, 1  # the writer's words
@@ -23,9 +23,9 @@ _HEADER_FLOATS = 2 * HEADER_WORDS
 _ULONG = types.uint64 if ctypes.sizeof(ctypes.c_ulong) == 8 else types.uint32
 SIGNATURE = types.intc(  # PaStreamCallback, portaudio.h
     types.voidptr,
-    types.CPointer(types.float32),  # type: ignore[no-untyped-call]
+    types.CPointer(types.float32),
     _ULONG,
-    types.CPointer(types.float64),  # type: ignore[no-untyped-call]
+    types.CPointer(types.float64),
     _ULONG,
     types.voidptr,
 )
@@ -45,7 +45,7 @@ _fence: Any = intrinsic(_build_fence)
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
-def _move(source, start, target, place, count):  # type: ignore[no-untyped-def]
+def _move(source, start, target, place, count):
     """Copy `count` floats; unsigned indices, so that none is taken from the end as in Python."""
     for k in range(np.uint64(count)):
         target[np.uint64(place) + k] = source[np.uint64(start) + k]
@@ -57,7 +57,7 @@ def _move(source, start, target, place, count):  # type: ignore[no-untyped-def]
     nogil=True,
     error_model="numpy",
 )
-def push(words, ring, block):  # type: ignore[no-untyped-def]
+def push(words, ring, block):
     """Copy (n, channels) into the ring; the caller has made sure that it has room."""
     frames, channels, written = words[FRAMES], words[CHANNELS], words[WRITTEN]
     _fence()
@@ -71,7 +71,7 @@ def push(words, ring, block):  # type: ignore[no-untyped-def]
 
 
 @cfunc(SIGNATURE, cache=True, error_model="numpy")
-def callback(_input, output, count, clock, _flags, user):  # type: ignore[no-untyped-def]
+def callback(_input, output, count, clock, _flags, user):
     """Ring → device; exact zeros for what the ring lacks, and before the ring was first full."""
     words = carray(user, HEADER_WORDS, np.int64)
     frames, channels, wanted = words[FRAMES], words[CHANNELS], np.int64(count)
@@ -104,4 +104,4 @@ def callback(_input, output, count, clock, _flags, user):  # type: ignore[no-unt
     return np.int32(0)
 
 
-ADDRESS = int(callback.address)  # type: ignore[arg-type]
+ADDRESS = int(callback.address)

@@ -1,0 +1,144 @@
+"""A show folder into the model. Everything that is wrong with it is told at once.
+
+sheet.toml, rig.toml and house.toml must be there; guard.toml and wire.toml have defaults. Nothing
+in the folder is changed, and whatever it holds, the answer is a list of problems.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from functools import partial
+from itertools import chain
+from pathlib import Path
+from typing import TypeVar
+
+from pydantic import BaseModel
+
+from beamctl.acoustics.cells import CellMap, cell_map, grid_positions, hex_positions, loom
+from beamctl.errors import ShowError
+from beamctl.files.folder import MISSING, Unreadable, folder_trouble, read_text, trouble
+from beamctl.files.locate import Key
+from beamctl.files.panel_csv import read_cells
+from beamctl.files.problems import Problem, Severity, Source, shown
+from beamctl.files.sounds import read_sounds
+from beamctl.files.tables import read_table
+from beamctl.show.aims import check_aims
+from beamctl.show.checks import GUARD, HOUSE, RIG, SHEET, Parts, check_names
+from beamctl.show.house import House
+from beamctl.show.limits import Guard, Wire
+from beamctl.show.rig import PanelSpec, Rig
+from beamctl.show.sheet import Sheet
+from beamctl.show.show import Show
+
+WIRE = "wire.toml"
+ABSENT: dict[str, tuple[Severity, str]] = {
+    SHEET: ("error", "missing, expected the beams and cues"),
+    RIG: ("error", "missing, expected the panels"),
+    HOUSE: ("error", "missing, expected the room and its seats"),
+    GUARD: ("warning", "missing: unsigned, the tables hold as they are"),
+}
+M = TypeVar("M", bound=BaseModel)
+
+
+def read_show(folder: str | Path) -> tuple[Show | None, list[Problem]]:
+    """The show of a folder, None when it has an error, and every problem in the order of lines."""
+    reading = _Reading(Path(folder))
+    show = reading.show()
+    order = {name: i for i, name in enumerate((SHEET, RIG, HOUSE, GUARD, WIRE))}
+    told = dict.fromkeys(reading.problems)  # two panels may share a file
+    problems = sorted(told, key=lambda p: (order.get(p.file, 9), p.file, p.line or 0))
+    return (None if any(p.severity == "error" for p in problems) else show), problems
+
+
+def load_show(folder: str | Path) -> Show:
+    """The show of a folder; ShowError, listing its errors, when it has any."""
+    show, problems = read_show(folder)
+    if show is None:
+        errors = [str(problem) for problem in problems if problem.severity == "error"]
+        count = "1 error" if len(errors) == 1 else f"{len(errors)} errors"
+        raise ShowError(f"{folder} cannot be played: {count}", "\n  ".join(errors))
+    return show
+
+
+class _Reading:
+    """One reading of one folder, and what it found."""
+
+    def __init__(self, folder: Path) -> None:
+        self.folder = folder
+        self.problems: list[Problem] = []
+        self.digests: dict[str, str] = {}
+        self.sources: dict[str, Source] = {}
+        self.cut: set[tuple[str, str]] = set()
+
+    def show(self) -> Show | None:
+        """The show as far as it can be read; the problems say whether it can be played."""
+        if what := folder_trouble(self.folder):
+            self.problems.append(Problem(str(self.folder), None, "", what))
+            return None
+        sheet, rig = self.table(SHEET, Sheet), self.table(RIG, Rig)
+        house = self.table(HOUSE, House)
+        guard, wire = self.table(GUARD, Guard), self.table(WIRE, Wire)
+        cells = self.cells(rig) if rig else {}
+        sounds = read_sounds(self.folder, sheet, partial(self.tell, SHEET)) if sheet else {}
+        parts = Parts(sheet, rig, house, guard, cells, frozenset(self.cut))
+        for finding in chain(check_names(parts), check_aims(parts)):
+            self.tell(finding.file, finding.where, finding.what, finding.severity)
+        if not (sheet and rig and house) or cells.keys() != rig.panel.keys():
+            return None
+        guard, wire = guard or Guard(format=1), wire or Wire(format=1)
+        home = str(self.folder.absolute())
+        return Show(home, sheet, rig, house, guard, wire, cells, sounds, self.digests)
+
+    def table(self, file: str, model: type[M]) -> M | None:
+        """One TOML file; None when it is not there or nothing can be made of it."""
+        try:
+            text, self.digests[file] = read_text(self.folder, file)
+        except Unreadable as error:
+            if str(error) != MISSING or file in ABSENT:
+                severity, what = ABSENT[file] if str(error) == MISSING else ("error", str(error))
+                self.problems.append(Problem(file, None, "", what, severity))
+            return None
+        table = read_table(file, text, model, self.problems.append)
+        if table is None:
+            return None
+        self.sources[file] = table.source
+        self.cut |= {(file, name) for name in table.cut}
+        return table.model
+
+    def cells(self, rig: Rig) -> dict[str, CellMap]:
+        """Cell maps by panel, of every panel that has one; measured files are looked for too."""
+        maps: dict[str, CellMap] = {}
+        for name, spec in rig.panel.items():
+            if spec.measured and (what := trouble(self.folder, spec.measured)):
+                self.tell(RIG, ("panel", name, "measured"), f"{shown(spec.measured)}: {what}")
+            cells = self.listed(name, spec) if spec.cells is not None else _drawn(spec)
+            if cells is not None:
+                maps[name] = cells
+        return maps
+
+    def listed(self, panel: str, spec: PanelSpec) -> CellMap | None:
+        """The cell map of a panel whose cells are in a CSV file."""
+        file = spec.cells or ""
+        try:
+            text, self.digests[file] = read_text(self.folder, file)
+        except Unreadable as error:
+            self.tell(RIG, ("panel", panel, "cells"), f"{shown(file)}: {error}")
+            return None
+        wiring = None if spec.loom == "csv" else spec.loom
+        return read_cells(file, text, wiring, self.problems.append)
+
+    def tell(
+        self, file: str, where: Sequence[Key], what: str, severity: Severity = "error"
+    ) -> None:
+        self.problems.append(self.sources[file].problem(where, what, severity))
+
+
+def _drawn(spec: PanelSpec) -> CellMap | None:
+    """The cell map of a grid or of a hexagon, all cells alike."""
+    if spec.grid is not None:
+        at_m = grid_positions(spec.grid.columns, spec.grid.rows, spec.grid.pitch_mm / 1000.0)
+    elif spec.hex is not None:
+        at_m = hex_positions(spec.hex.rings, spec.hex.pitch_mm / 1000.0)
+    else:
+        return None
+    return None if spec.loom == "csv" else cell_map(at_m, loom(at_m, spec.loom))
