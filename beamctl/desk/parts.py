@@ -105,6 +105,10 @@ def sink_row(view: View, width: int) -> Row:
         f"sink {engine.sink}  {engine.rate_hz / 1000:g} kHz  {engine.feeds} feeds  "
         f"quantum {engine.quantum}  ring {engine.ring_ms:g} ms  "
     )
+    if engine.busy:
+        return fit(
+            (Span(f"sink {engine.sink}  "), Span(f"not ready: {engine.busy}", "attention")), width
+        )
     late: Role = "attention" if engine.late else "dim"
     load: Role = "attention" if engine.load_pct >= BUSY_PCT else "dim"
     row = (

@@ -96,8 +96,14 @@ class Panel:
             for b in range(beams)
         ]
         self._quiet_n = buffers.rows.shape[3] + 2 * SEGMENT
+        self._awake: set[int] = set()
         for b in range(beams):
             self._rest(b)
+
+    @property
+    def idle(self) -> bool:
+        """True while no beam sounds: the feeds are exact zeros."""
+        return not self._awake
 
     @property
     def programme_delay(self) -> int:
@@ -115,25 +121,19 @@ class Panel:
     def wake(self, beam: int) -> None:
         """The beam may sound from here on."""
         self.buffers.active[beam] = True
+        self._awake.add(beam)
 
     def begin_segment(self, sample: int) -> None:
         """Move every history one segment on; let beams rest that have been silent long enough."""
-        for b, state in enumerate(self.states):
-            if self.buffers.active[b] and state.silent(sample - self._quiet_n):
+        for b in sorted(self._awake):
+            if self.states[b].silent(sample - self._quiet_n):
                 self._rest(b)
-        self.buffers.piece[:] = 0
-        self.buffers.stale[:] |= ~self.buffers.still
-        if self.buffers.active.any():
-            _shift(self.buffers)
+        _shift(self.buffers)
 
     def step(self, sample: int, begin: int, end: int, sounds: Mapping[str, F32]) -> None:
-        """Work out positions begin … end of the segment at `sample` into `buffers.out`."""
-        if not self.buffers.active.any():
-            self.buffers.out[:, begin:end] = 0.0
-            return
-        for b, state in enumerate(self.states):
-            if self.buffers.active[b]:
-                self._read_programme(b, state, sample, begin, end, sounds)
+        """Work out positions begin … end of the segment at `sample`; not to be asked while idle."""
+        for b in self._awake:
+            self._read_programme(b, self.states[b], sample, begin, end, sounds)
         advance(self.buffers, self.wiring, sample, begin, end)
 
     def _read_programme(
@@ -164,6 +164,7 @@ class Panel:
         for array in (buffers.peaks, buffers.held, buffers.demands):
             array[b] = 1.04 * REST
         buffers.active[b] = False
+        self._awake.discard(b)
         buffers.stale[b] = True
         buffers.still[b] = False
         buffers.piece[b] = 0
@@ -237,6 +238,8 @@ def _buffers(wiring: Wiring, feeds: int, rate_hz: int, beams: int) -> Buffers:
 def _shift(buffers):
     """Every history takes the last values of the segment just finished."""
     for b in range(buffers.active.shape[0]):
+        buffers.piece[b] = 0
+        buffers.stale[b] |= not buffers.still[b]
         if buffers.active[b]:
             _shift_row(buffers.gain[b], SEGMENT)
             for q in range(2):
@@ -247,6 +250,15 @@ def _shift(buffers):
                 _shift_row(buffers.base[b, q], SEGMENT)
                 for j in range(buffers.rows.shape[1]):
                     _shift_row(buffers.rows[b, j, q], SEGMENT)
+
+
+@compiled
+def interleave(block, first, out, gate, begin):
+    """block[i, first + f] = gate[i] × out[f, begin + i]: feeds of one panel into (n, channels)."""
+    for i in range(block.shape[0]):
+        gain = gate[i]
+        for f in range(out.shape[0]):
+            block[i, first + f] = gain * out[f, begin + i]
 
 
 @compiled

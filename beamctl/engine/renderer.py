@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from beamctl.acoustics.air import Air
 from beamctl.engine.envelopes import gain_ramp
-from beamctl.engine.panel import SEGMENT, Panel
+from beamctl.engine.panel import SEGMENT, Panel, interleave
 from beamctl.show import glides
 from beamctl.show.beamstate import MIN_GLIDE_S, BeamState
 from beamctl.show.records import SOUNDING, Record
@@ -79,7 +79,7 @@ class Renderer:
         told = []
         for name, panel in self.panels.items():
             first, feeds = self._first[name], panel.buffers.out.shape[0]
-            if not panel.buffers.active.any():
+            if panel.idle:
                 told.append((0.0, 1.0))
                 continue
             peak = float(np.abs(block[:, first : first + feeds]).max())
@@ -119,14 +119,9 @@ class Renderer:
         gain_ramp(gate, self._gate.level, self.position, n)
         out[:] = 0.0
         for name, panel in self.panels.items():
-            panel.step(segment, offset, offset + n, self._sounds[name])
-            first, feeds = self._first[name], panel.buffers.out.shape[0]
-            if panel.buffers.active.any():
-                np.multiply(
-                    panel.buffers.out[:, offset : offset + n].T,
-                    gate[:, None],
-                    out=out[:, first : first + feeds],
-                )
+            if not panel.idle:
+                panel.step(segment, offset, offset + n, self._sounds[name])
+                interleave(out, self._first[name], panel.buffers.out, gate, offset)
         self.position += n
 
 

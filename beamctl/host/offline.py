@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import hashlib
+from collections import deque
 from collections.abc import Callable, Iterable, Iterator
+from concurrent.futures import Future, ThreadPoolExecutor
 from pathlib import Path
 
 import numpy as np
@@ -24,6 +26,7 @@ Progress = Callable[[str, int, int], None]
 Write = Callable[[NDArray[np.float32]], None]
 
 BLOCK = 4096
+BLOCKS_BEHIND = 8
 
 
 def play_through(show: Show, gos: Iterable[tuple[int, str]], until: int) -> Iterator[Record]:
@@ -58,13 +61,23 @@ def render(
     for record in records:
         renderer.put(record)
     digest = hashlib.sha256()
-    block = np.zeros((BLOCK, show.channels), np.float32)
-    while renderer.position < samples:
-        part = block[: min(BLOCK, samples - renderer.position)]
-        renderer.render(part)
-        digest.update(part.data)
-        write(part)
-        progress("rendering", renderer.position, samples)
+
+    def keep(block: NDArray[np.float32]) -> None:
+        digest.update(block.data)
+        write(block)
+
+    # one thread renders while the other writes, a few blocks behind
+    with ThreadPoolExecutor(max_workers=1) as keeper:
+        waiting: deque[Future[None]] = deque()
+        while renderer.position < samples:
+            block = np.zeros((min(BLOCK, samples - renderer.position), show.channels), np.float32)
+            renderer.render(block)
+            waiting.append(keeper.submit(keep, block))
+            if len(waiting) > BLOCKS_BEHIND:
+                waiting.popleft().result()
+            progress("rendering", renderer.position, samples)
+        for block_kept in waiting:
+            block_kept.result()
     return digest.hexdigest()
 
 

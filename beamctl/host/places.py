@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import getpass
 import hashlib
 import os
 import re
@@ -9,20 +10,25 @@ import tempfile
 from datetime import datetime
 from pathlib import Path
 
-from platformdirs import user_runtime_path, user_state_path
+from platformdirs import user_state_path
+
+from beamctl.errors import DeviceError
 
 
 def runtime_folder() -> Path:
     """A folder that only this user may enter, for sockets and shared memory."""
+    user = os.getuid() if hasattr(os, "getuid") else getpass.getuser()
     named = os.environ.get("BEAMCTL_RUNTIME")
-    folder = Path(named) if named else user_runtime_path("beamctl")
-    try:
-        folder.mkdir(mode=0o700, parents=True, exist_ok=True)
-    except OSError:
-        folder = Path(tempfile.gettempdir()) / f"beamctl-{os.getuid()}"
-        folder.mkdir(mode=0o700, exist_ok=True)
-    if hasattr(os, "getuid") and folder.stat().st_uid != os.getuid():
-        raise PermissionError(f"{folder} belongs to another user")
+    session = os.environ.get("XDG_RUNTIME_DIR")
+    if named:
+        folder = Path(named)
+    elif session and os.access(session, os.W_OK):
+        folder = Path(session) / "beamctl"
+    else:
+        folder = Path(tempfile.gettempdir()) / f"beamctl-{user}"
+    folder.mkdir(mode=0o700, parents=True, exist_ok=True)
+    if hasattr(os, "getuid") and folder.stat().st_uid != user:
+        raise DeviceError(f"{folder} belongs to another user", "name your own in BEAMCTL_RUNTIME")
     folder.chmod(0o700)
     return folder
 

@@ -47,7 +47,8 @@ class BeamState:
         default_factory=lambda: np.zeros((len(LAWS), glides.SCALAR_SIZE))
     )
     voices: list[Voice] = field(default_factory=list)
-    _frozen: dict[str, tuple[float, ...]] = field(default_factory=dict)
+    _frozen: list[tuple[Row, tuple[float, ...]]] = field(default_factory=list)
+    _frozen_at: int | None = None
 
     def __post_init__(self) -> None:
         self.level[:] = 0.0
@@ -100,24 +101,31 @@ class BeamState:
         if abs(slope) < 1e-15:
             slope = 0.0
         over = shortest
-        if slope < 0.0:  # never carried below zero: 4/27 n |slope| stays under the value
-            over = min(shortest, 4.0 * value / -slope)
+        if slope < 0.0:  # never carried below zero: k s (1 - s)² ≤ cos²(π s / 2) for k ≤ (π/2)²
+            over = min(shortest, 2.4 * value / -slope)
         row[: glides.SCALAR_SIZE] = (sample, n, value, goal, slope, over if slope else 0.0)
 
     def _level(self, sample: int, args: Any) -> None:
         n = max(int(args["n"]), round(MIN_GLIDE_S * self.rate_hz))
+        self._forget(self.level)
         self._glide(self.level, sample, float(args["power"]), n, MIN_GLIDE_S * self.rate_hz)
 
     def _depth(self, sample: int, args: Any) -> None:
         n = max(int(args["n"]), round(MIN_GLIDE_S * self.rate_hz))
+        self._forget(self.depth)
         self._glide(self.depth, sample, float(args["depth"]), n)
 
     def _law(self, sample: int, args: Any) -> None:
         n = max(int(args["n"]), round(SWAP_S * self.rate_hz))
+        self._forget(*self.law)
         for row, name in zip(self.law, LAWS, strict=True):
             self._glide(row, sample, float(name == args["law"]), n)
 
     def _aim(self, sample: int, args: Any) -> None:
+        self._forget(self.aim)
+        self._travel(sample, args)
+
+    def _travel(self, sample: int, args: Any) -> None:
         row, n = self.aim, int(args["n"])
         x, y, z, distance = glides.travel_at(row, sample)
         step = np.subtract(glides.travel_at(row, sample + 1)[:3], (x, y, z))
@@ -146,6 +154,7 @@ class BeamState:
             self.reach[:] = (sample, 0, value, value, 0, 0, 0, 0)
 
     def _reach(self, sample: int, args: Any) -> None:
+        self._forget(self.reach)
         n = int(args["n"])
         distance = glides.travel_at(self.aim, sample)[3]
         value = glides.reach_at(self.reach, sample, distance)
@@ -155,62 +164,71 @@ class BeamState:
 
     def _play(self, sample: int, args: Any) -> None:
         swap = round(SWAP_S * self.rate_hz)
-        sounding = bool(self.voices) and not self.silent(sample)
-        self._fade_voices(sample, swap)
-        first = 0.0 if sounding else 1.0
-        if not sounding:
-            self.voices.clear()
-        weight = np.array((sample, swap if sounding else 0, first, 1.0, 0.0, 0.0))
+        heard = [] if self.silent(sample) else self.voices
+        self.voices = [v for v in heard if not self._faded(v, sample)]
+        for voice in self.voices:  # those on their way out too, so that the weights sum to 1
+            self._fade(voice, sample, swap)
+        first, n = (0.0, swap) if self.voices else (1.0, 0)
+        weight = np.array((sample, n, first, 1.0, 0.0, 0.0))
         self.voices.append(Voice(str(args["sound"]), sample, bool(args["loop"]), weight))
 
     def _stop(self, sample: int, args: Any) -> None:
-        self._fade_voices(sample, int(args["n"]))
-
-    def _fade_voices(self, sample: int, n: int) -> None:
-        self.voices = [v for v in self.voices if not self._faded(v, sample)]
         for voice in self.voices:
             if voice.weight[glides.TO] != 0.0:
-                self._glide(voice.weight, sample, 0.0, n)
+                self._fade(voice, sample, int(args["n"]))
+
+    def _fade(self, voice: Voice, sample: int, n: int) -> None:
+        self._forget(voice.weight)
+        self._glide(voice.weight, sample, 0.0, n)
 
     def _faded(self, voice: Voice, sample: int) -> bool:
         return voice.weight[glides.TO] == 0.0 and glides.is_settled(voice.weight, sample)
 
+    def _forget(self, *rows: Row) -> None:
+        """What is told while frozen holds: thawing must not take it back."""
+        self._frozen = [(r, old) for r, old in self._frozen if all(r is not row for row in rows)]
+
     def _freeze(self, sample: int, args: Any) -> None:
-        if self._frozen:
+        if self._frozen_at is not None:
             return
-        self._frozen = {
-            name: tuple(row) for name, row in self._moving_rows(sample) if name != "aim"
-        }
-        self._frozen |= {"aim": tuple(self.aim)} if self.travelling(sample) else {}
-        self._frozen["sample"] = (float(sample),)
-        shortest = MIN_GLIDE_S * self.rate_hz
-        for _, row in self._moving_rows(sample):
-            if row is not self.aim:
-                self._glide(row, sample, glides.scalar_at(row, sample), 0, shortest)
+        self._frozen_at = sample
+        rows = (self.level, self.depth, *self.law, *(v.weight for v in self.voices))
+        for row in rows:
+            if not glides.is_settled(row, sample):
+                self._frozen.append((row, tuple(row)))
+                self._glide(row, sample, glides.scalar_at(row, sample), 0, self._carried(row))
+        if sample < self.reach[glides.START] + self.reach[glides.N]:
+            self._frozen.append((self.reach, tuple(self.reach)))
+            value = self.reach_per_m_at(sample)
+            slope = self.reach_per_m_at(sample + 1) - value
+            self.reach[:] = (sample, 0, value, value, slope, EASE_S * self.rate_hz, 0, 0)
         if self.travelling(sample):
+            self._frozen.append((self.aim, tuple(self.aim)))
             *direction, distance = glides.travel_at(self.aim, sample)
             goal = np.array(direction) * (distance or 1.0)
             kind = "point_m" if distance else "direction"
-            self._aim(sample, {kind: goal.tolist(), "n": round(EASE_S * self.rate_hz)})
+            self._travel(sample, {kind: goal.tolist(), "n": round(EASE_S * self.rate_hz)})
 
-    def _moving_rows(self, sample: int) -> list[tuple[str, Row]]:
-        rows = [("level", self.level), ("depth", self.depth)]
-        return [(name, row) for name, row in rows if not glides.is_settled(row, sample)]
+    def _carried(self, row: Row) -> float:
+        """Samples over which a row keeps its old slope: a step in level's would be heard."""
+        return MIN_GLIDE_S * self.rate_hz if row is self.level else 0.0
 
     def _thaw(self, sample: int, args: Any) -> None:
-        frozen, self._frozen = self._frozen, {}
-        if not frozen:
-            return
-        at = frozen.pop("sample")[0]
-        for name, old in frozen.items():
-            left = max(1, round(old[glides.START] + old[glides.N] - at))
-            if name == "aim":
+        frozen, at = self._frozen, self._frozen_at
+        self._frozen, self._frozen_at = [], None
+        for row, old in frozen:
+            left = max(1, round(old[glides.START] + old[glides.N] - (at or 0)))
+            if row is self.aim:
                 kind = "point_m" if old[glides.KIND] == glides.LINE else "direction"
                 goal = list(old[glides.GOAL : glides.GOAL + 3])
-                self._aim(sample, {kind: goal, "n": left})
+                self._travel(sample, {kind: goal, "n": left})
+            elif row is self.reach:
+                value = self.reach_per_m_at(sample)
+                follows = old[glides.TO_FOLLOWS]
+                self.reach[:] = (sample, left, value, old[glides.TO], 0, 0, 0, follows)
             else:
-                shortest = MIN_GLIDE_S * self.rate_hz
-                self._glide(getattr(self, name), sample, old[glides.TO], left, shortest)
+                carried = self._carried(row)
+                self._glide(row, sample, old[glides.TO], max(left, round(carried)), carried)
 
 
 _APPLY = {

@@ -74,7 +74,9 @@ def scalar_at(row: Any, sample: float) -> float:
     """Value of a scalar row at an absolute sample."""
     t = sample - row[0]
     u = t / row[1] if row[1] > 0.0 else 1.0
-    return row[2] + (row[3] - row[2]) * raised_cosine(u) + row[4] * carry(t, row[5])  # type: ignore[no-any-return]
+    share = raised_cosine(u)
+    value = row[2] + (row[3] - row[2]) * share if share < 1.0 else row[3]
+    return value + row[4] * carry(t, row[5])  # type: ignore[no-any-return]
 
 
 @register_jitable

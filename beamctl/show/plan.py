@@ -68,7 +68,7 @@ class BeamPlan:
         if act.fall_s is not None:
             return self.fall(sample, act.fall_s, cue)
         n = round(act.over_s * self.rate_hz)
-        fresh = act.sound is not None and not self.sounding(sample)
+        ends = self.state.level[TO] == 0.0  # silent, or on its way there
         if act.law is not None:
             self._tell(sample, "law", law=act.law, n=n)
         if act.depth is not None:
@@ -81,7 +81,7 @@ class BeamPlan:
             self._aim(target, sample, n)
         if act.sound is not None:
             self._play(act.sound, act.loop, sample, seconds)
-        if fresh or (act.trim_db is not None and self.sounding(sample)):
+        if (act.sound if ends else act.trim_db) is not None:
             self._level(sample, self._power(), n)
         return self._told()
 

@@ -40,6 +40,11 @@ class Run:
     acts: deque[tuple[int, Act]]
     follow: tuple[int, str] | None
     settles_at: int  # when the last glide it started is over
+    frozen: int = 0  # samples of those glides that were left when the show was held
+
+    def lasts(self, sample: int) -> None:
+        """It is not done before `sample`."""
+        self.settles_at = max(self.settles_at, sample)
 
     def due(self) -> int | None:
         """Sample of the next act."""
@@ -55,6 +60,7 @@ class Player:
     standby: str = ""
     newest: str = ""
     newest_at: int | None = None
+    did_at: int = 0  # sample of the newest thing that happened by itself
     held_at: int | None = None
     ready_until: int = -1
     states: dict[str, CueState] = field(default_factory=dict)  # resting cues are not in it
@@ -81,17 +87,23 @@ class Player:
     # -- what may be asked -------------------------------------------------------------------
 
     def handle(self, event: events.Event, sample: int) -> list[Record]:
-        """Records that answer `event` at `sample`."""
-        return _HANDLERS[type(event)](self, event, sample)
+        """Records that answer `event` at `sample`, after those of all that was due before it.
+
+        What `advance` did ahead of `sample` is on its way already, so an event that moves beams
+        waits for it: else a fall would be undone by the record of a later sample.
+        """
+        records = self.advance(sample)
+        if isinstance(event, events.Go | events.Hold | events.CarryOn | events.Tail):
+            sample = max(sample, self.did_at)
+        return records + _HANDLERS[type(event)](self, event, sample)
 
     def advance(self, until: int) -> list[Record]:
         """Records of all that is due by itself before sample `until`, in order."""
         records: list[Record] = []
-        while self.held_at is None and (due := self._next_due()) is not None and due[0] < until:
-            records += due[1](due[0])
-        if self.held_at is not None:
-            while (ending := self._next_end()) is not None and (ending.ends_at or 0) < until:
-                records += self._end(ending, ending.ends_at or 0)
+        while (due := self._next_due()) is not None and due[0] < until:
+            self.did_at, deed = due
+            records += self._settle(self.did_at)
+            records += deed(self.did_at)
         return records + self._settle(until)
 
     def sink(self, event: str, sample: int) -> list[Record]:
@@ -134,6 +146,7 @@ class Player:
         for run in self.runs.values():
             if run.follow is not None and run.follow[1] == ref:
                 run.follow = None
+                run.lasts(sample)
         self._turn(ref, "go")
         acts = sorted(cue.act, key=lambda act: act.at_s)
         at = deque((sample + round(act.at_s * self.rate_hz), act) for act in acts)
@@ -152,6 +165,7 @@ class Player:
     def _act(self, ref: str, sample: int) -> list[Record]:
         run = self.runs[ref]
         _, act = run.acts.popleft()
+        run.lasts(sample)
         plan = self.plans[act.beam]
         seconds = self.show.sounds[act.sound].seconds if act.sound is not None else 0.0
         owner = plan.owner
@@ -170,8 +184,8 @@ class Player:
     def _lengthen(self, ref: str, records: list[Record]) -> None:
         """Cue `ref` is not done before these records have run their course."""
         if ref in self.runs:
-            ends = [r.sample + int(r.args.get("n", 0)) for r in records]
-            self.runs[ref].settles_at = max([self.runs[ref].settles_at, *ends])
+            for record in records:
+                self.runs[ref].lasts(record.sample + int(record.args.get("n", 0)))
 
     def _stand_by(self, event: events.StandBy, sample: int) -> list[Record]:
         if event.ref and event.ref not in self._cues:
@@ -179,9 +193,9 @@ class Player:
         if event.ref and (self.state(event.ref), "stand-by") not in CUE:
             if event.ref == self.standby:
                 return []
-            return self._refuse(
-                event, sample, "busy", f"cue {event.ref} is {self.state(event.ref)}"
-            )
+            reason: Reason = "barred" if event.ref in self.barred else "busy"
+            what = f"cue {event.ref} is {self.state(event.ref)}"
+            return self._refuse(event, sample, reason, what)
         self._stand(event.ref)
         return [Record(sample, "standby", cue=event.ref, who=event.who)]
 
@@ -219,7 +233,9 @@ class Player:
     def _hush(self, event: events.Hush, sample: int) -> list[Record]:
         self.ready_until = -1
         for run in self.runs.values():
-            run.follow = None
+            if run.follow is not None:
+                run.follow = None
+                run.lasts(sample)
         gate = Record(sample, "gate", args={"open": 0, "n": round(MIN_GLIDE_S * self.rate_hz)})
         return [gate, *self._to(OUTPUT[self.output, "hush"], sample, "hush", event.who)]
 
@@ -227,6 +243,8 @@ class Player:
         if self.held_at is not None:
             return self._refuse(event, sample, "busy", "the show is held already")
         self.held_at = sample
+        for run in self.runs.values():
+            run.frozen = max(0, run.settles_at - sample)
         records = [Record(sample, "hold", who=event.who)]
         for plan in self.plans.values():
             if plan.sounding(sample):
@@ -240,7 +258,9 @@ class Player:
         for run in self.runs.values():
             run.acts = deque((at + wait, act) for at, act in run.acts)
             run.follow = run.follow and (run.follow[0] + wait, run.follow[1])
-            run.settles_at += wait
+            if run.frozen:
+                run.lasts(sample + run.frozen)
+                run.frozen = 0
         told = [Record(sample, "carry-on", who=event.who)]
         return told + [r for p in self.plans.values() for r in p.thaw(sample)]
 
@@ -256,7 +276,7 @@ class Player:
         run = self.runs[ref]
         run.acts.clear()
         run.follow = None
-        run.settles_at = sample + round(event.fall_s * self.rate_hz)
+        run.settles_at, run.frozen = sample + round(event.fall_s * self.rate_hz), 0
         records = [Record(sample, "tail", cue=ref, who=event.who)]
         for plan in self.plans.values():
             if plan.owner == ref:
@@ -269,38 +289,30 @@ class Player:
     # -- what happens by itself ---------------------------------------------------------------
 
     def _next_due(self) -> tuple[int, Callable[[int], list[Record]]] | None:
-        """Sample and deed of the next thing that happens by itself."""
+        """Sample and deed of what happens next by itself; while held, sounds still end."""
         due: list[tuple[int, Callable[[int], list[Record]]]] = []
-        for run in self.runs.values():
+        for run in self.runs.values() if self.held_at is None else ():
             if (at := run.due()) is not None:
                 due.append((at, partial(self._act, run.ref)))
             if run.follow is not None:
                 due.append((run.follow[0], partial(self._follow_on, run)))
-        ending = self._next_end()
-        if ending is not None and ending.ends_at is not None:
-            due.append((ending.ends_at, partial(self._end, ending)))
+        for plan in self.plans.values():
+            if plan.ends_at is not None:
+                due.append((plan.ends_at, partial(self._end, plan)))
         return min(due, key=lambda item: item[0], default=None)
-
-    def _next_end(self) -> BeamPlan | None:
-        ending = [p for p in self.plans.values() if p.ends_at is not None]
-        return min(ending, key=lambda p: p.ends_at or 0, default=None)
 
     def _follow_on(self, run: Run, sample: int) -> list[Record]:
         ref = run.follow[1] if run.follow else ""
         run.follow = None
-        event = events.Go(f"follow-on of {run.ref}", ref)
-        standby = self.standby
-        records = self._go(event, sample)
-        if standby not in ("", ref):
-            self._stand(standby)
-        return records
+        run.lasts(sample)
+        return self._go(events.Go(f"follow-on of {run.ref}", ref), sample)
 
     def _settle(self, sample: int) -> list[Record]:
         """Finish the cues that have nothing left to do."""
         records = []
         for run in list(self.runs.values()):
             sounds = any(p.owner == run.ref for p in self.plans.values())
-            if run.acts or run.follow or sounds or run.settles_at >= sample:
+            if run.acts or run.follow or run.frozen or sounds or run.settles_at >= sample:
                 continue
             del self.runs[run.ref]
             self._turn(run.ref, "settled")
@@ -310,17 +322,17 @@ class Player:
     # -- small things ---------------------------------------------------------------------------
 
     def state(self, ref: str) -> CueState:
-        """State of a cue of the sheet."""
-        return "barred" if ref in self.barred else self.states.get(ref, "resting")
+        """State of a cue of the sheet; one that sounds already can still be tailed when barred."""
+        state = self.states.get(ref, "resting")
+        return "barred" if ref in self.barred and state not in ("running", "tailing") else state
 
     def _turn(self, ref: str, event: str) -> None:
-        state = CUE[self.state(ref), event]
-        self.states.pop(ref, None)
+        state = CUE[self.states.pop(ref, "resting"), event]
         if state != "resting":
             self.states[ref] = state
 
     def _stand(self, ref: str) -> None:
-        if self.standby and self.state(self.standby) == "standing by":
+        if self.states.get(self.standby) == "standing by":
             self._turn(self.standby, "stand-down")
         self.standby = ref
         if ref and (self.state(ref), "stand-by") in CUE:

@@ -128,6 +128,13 @@ def test_sink(view: Make) -> None:
     assert roles["late 3"] == roles["load 91 %"] == "attention"
 
 
+def test_sink_that_is_not_ready_says_what_it_waits_for(view: Make) -> None:
+    engine = replace(view().snapshot.engine, busy="sound bell.flac, 3 of 7")
+    row = sink_row(view(engine=engine), 80)
+    assert "not ready: sound bell.flac, 3 of 7" in text_of(row)
+    assert {span.role for span in row if "ready" in span.text} == {"attention"}
+
+
 def test_notices_oldest_first_with_their_number(view: Make) -> None:
     assert text_of(notice_row(view(notices=("first", "second")), 80)) == "! 1 of 2: first"
     assert text_of(notice_row(view(), 80)) == "no notices"
