@@ -34,6 +34,8 @@ def cache_folder() -> Path:
 
 numba.config.CACHE_DIR = str(cache_folder())  # type: ignore[attr-defined]
 
-compiled = numba.njit(cache=True, nogil=True, error_model="numpy", fastmath={"contract"})
+# No contraction into fused multiply-adds: whether the compiler fuses depends on the loop it is in, and
+# the samples would depend on where a block ends.
+compiled = numba.njit(cache=True, nogil=True, error_model="numpy")
 
 jitable = register_jitable  # lends a plain function of a pure package to compiled code

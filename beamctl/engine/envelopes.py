@@ -11,6 +11,7 @@ from __future__ import annotations
 import numpy as np
 
 from beamctl.engine.compiled import compiled
+from beamctl.engine.fused import fma
 from beamctl.show.glides import is_settled, scalar_at
 from beamctl.signal.laws import envelope
 
@@ -84,8 +85,10 @@ def shape_band(out, out_at, count, half, begin, taps_re, taps_im):
         a, b = half[0, 0, at : at + count], half[0, 1, at : at + count]
         c, d = half[1, 0, at - 1 : at - 1 + count], half[1, 1, at - 1 : at - 1 + count]
         for n in range(count):
-            out_re[n] += re * a[n] - im * b[n] + re_odd * c[n] - im_odd * d[n]
-            out_im[n] += re * b[n] + im * a[n] + re_odd * d[n] + im_odd * c[n]
+            even = fma(re, a[n], fma(-im, b[n], out_re[n]))
+            out_re[n] = fma(re_odd, c[n], fma(-im_odd, d[n], even))
+            even = fma(re, b[n], fma(im, a[n], out_im[n]))
+            out_im[n] = fma(re_odd, d[n], fma(im_odd, c[n], even))
 
 
 @compiled
@@ -103,8 +106,8 @@ def raise_rate(out, out_at, count, quarter, at, taps, first):
         imag = np.float32(0.0)
         for k in range(taps.shape[0] // 4):
             h = taps[4 * k + phase]
-            real += h * quarter[0, newest - k]
-            imag += h * quarter[1, newest - k]
+            real = fma(h, quarter[0, newest - k], real)
+            imag = fma(h, quarter[1, newest - k], imag)
         out[0, out_at + i] = real
         out[1, out_at + i] = imag
 
@@ -124,11 +127,11 @@ def chunk_peak(full, begin, count):
 
 @compiled
 def gain_ramp(out, level_row, sample, count):
-    """Beam gain over count samples from `sample`: root of the level row, float32 (count,)."""
+    """Beam gain over count samples from `sample`: the level row, float32 (count,)."""
     if is_settled(level_row, sample):
-        still = np.sqrt(max(0.0, scalar_at(level_row, sample)))
+        still = max(0.0, scalar_at(level_row, sample))
         for i in range(count):
             out[i] = still
         return
     for i in range(count):
-        out[i] = np.sqrt(max(0.0, scalar_at(level_row, sample + i)))
+        out[i] = max(0.0, scalar_at(level_row, sample + i))

@@ -10,16 +10,19 @@ quadrature sums meet the carrier once per feed.
 
 from __future__ import annotations
 
-from math import ceil, cos, floor, pi, sin
+from math import ceil, floor
 
 import numpy as np
 
 from beamctl.acoustics.steering import path_lead_m
 from beamctl.engine.compiled import compiled, jitable
+from beamctl.engine.fused import fma
+from beamctl.engine.turning import turn
 from beamctl.show.glides import reach_at, travel_at
 
 ROWS = 16
 ROW_TAPS = 6
+RUN = 32  # samples; runs between rows end on multiples of it, which the compiler can widen
 ROW_DELAY = 2  # whole samples that the middle of the six taps adds to every row
 
 _path_lead_m = jitable(path_lead_m)
@@ -53,48 +56,54 @@ def fill_rows(rows, base, taps, row_at, base_at, count):
             out = rows[j, q, row_at : row_at + count]
             b = base[q, base_at - 5 : base_at + count]
             for i in range(count):
-                out[i] = (
-                    h0 * b[i + 5]
-                    + h1 * b[i + 4]
-                    + h2 * b[i + 3]
-                    + h3 * b[i + 2]
-                    + h4 * b[i + 1]
-                    + h5 * b[i]
-                )
+                near = fma(h2, b[i + 3], fma(h3, b[i + 2], h4 * b[i + 1]))
+                out[i] = fma(h0, b[i + 5], fma(h1, b[i + 4], fma(h5, b[i], near)))
 
 
 @compiled
-def aim_feeds(coef, delay, cells, back, feed, share, aim_row, reach_row, start, span, k):
+def aim_feeds(coef, delay, cells, wanted, feed, share, scratch, aim_row, reach_row, start, span, k):
     """Phasor parabola and row delay of every feed of one beam, from `start` over `span` samples.
 
-    coef   (F, 6) float64: real and imaginary part of c0, c1, c2; phasor(x) = c0 + c1 x + c2 x²
-    delay  (F, 3) float64: delay in sixteenths of a sample, d0 + d1 x + d2 x²
-    cells  (N, 3) positions in metres; back (N,) complex: what undoes polarity, phase, trim
-    feed   (N,) feed of each cell; share (N,) 1 / live cells of its feed, 0 for a dead cell
-    k      (rad/s of the carrier, 1 / speed of sound, base delay s, sixteenths of a sample per s)
+    coef     (F, 6) float64: real and imaginary part of c0, c1, c2; phasor(x) = c0 + c1 x + c2 x²
+    delay    (F, 3) float64: delay in sixteenths of a sample, d0 + d1 x + d2 x²
+    cells    (4, N): right, out, up and squared distance from the centre, metres
+    wanted   (2, N): real and imaginary part of what undoes polarity, phase and trim, times share
+    feed     (N,) feed of each cell; share (N,) 1 / live cells of its feed, 0 for a dead cell
+    scratch  (3, N) float64
+    k        (carrier Hz, 1 / speed of sound, base delay s, sixteenths of a sample per s)
     """
-    omega, slowness, base_s, per_s = k
+    carrier_hz, slowness, base_s, per_s = k
     coef[:] = 0.0
     delay[:] = 0.0
     for step in range(3):
         sample = start + 0.5 * step * span
         x, y, z, distance = travel_at(aim_row, sample)
         per_m = reach_at(reach_row, sample, distance)
-        for n in range(cells.shape[0]):
-            if share[n] == 0.0:
-                continue
-            cx, cy, cz = cells[n, 0], cells[n, 1], cells[n, 2]
-            lead = _path_lead_m(cx * x + cy * y + cz * z, cx * cx + cy * cy + cz * cz, per_m)
-            tau = base_s + lead * slowness
-            phase = -omega * tau
-            phasor = share[n] * back[n] * complex(cos(phase), sin(phase))
-            coef[feed[n], 2 * step] += phasor.real
-            coef[feed[n], 2 * step + 1] += phasor.imag
-            delay[feed[n], step] += share[n] * tau * per_s
+        _cell_phasors(scratch, cells, wanted, x, y, z, per_m, carrier_hz, slowness, base_s)
+        for n in range(feed.shape[0]):
+            f = feed[n]
+            coef[f, 2 * step] += scratch[0, n]
+            coef[f, 2 * step + 1] += scratch[1, n]
+            delay[f, step] += share[n] * scratch[2, n] * per_s
     for f in range(coef.shape[0]):
         for q in range(2):
             _to_parabola(coef[f, q::2], span)
         _to_parabola(delay[f], span)
+
+
+@compiled
+def _cell_phasors(scratch, cells, wanted, x, y, z, per_m, carrier_hz, slowness, base_s):
+    """Phasor (real, imaginary) and delay in seconds of every cell, for one aim and focus."""
+    right, out, up, square = cells[0], cells[1], cells[2], cells[3]
+    re, im, taus = scratch[0], scratch[1], scratch[2]
+    w_re, w_im = wanted[0], wanted[1]
+    for n in range(right.shape[0]):
+        dot = right[n] * x + out[n] * y + up[n] * z
+        taus[n] = base_s + _path_lead_m(dot, square[n], per_m) * slowness
+    for n in range(right.shape[0]):
+        c, s = turn(-carrier_hz * taus[n])
+        re[n] = w_re[n] * c - w_im[n] * s
+        im[n] = w_re[n] * s + w_im[n] * c
 
 
 @compiled
@@ -117,16 +126,18 @@ def add_beam(acc, rows, coef, delay, ramp, row_at, piece, begin, end, segment):
     for f in range(coef.shape[0]):
         d0, d2 = delay[f, 0], delay[f, 2]
         d1 = delay[f, 1] + d2 * (segment - piece)  # of the chord, which picks the rows
+        step = RUN if abs(d1) * RUN < 0.25 else 1
         x = 0
         while x < segment - piece:
             row = floor(d0 + d1 * x)
+            stop = segment - piece
             if d1 > 0.0:
-                stop = ceil((row + 1 - d0) / d1)
+                stop = min(stop, ceil((row + 1 - d0) / d1))
             elif d1 < 0.0:
-                stop = floor((row - d0) / d1) + 1
-            else:
-                stop = segment - piece
-            stop = min(max(stop, x + 1), segment - piece)
+                stop = min(stop, floor((row - d0) / d1) + 1)
+            # on to a full wide register, even if the weight leaves 0 to 1 by a little there
+            stop = max(stop, x + 1) + piece
+            stop = min(stop + (-stop) % step, segment) - piece
             low, high = max(x, begin - piece), min(stop, end - piece)
             if low < high:
                 n = high - low
@@ -159,13 +170,13 @@ def _add_run(out_i, out_q, a_i, a_q, b_i, b_q, ramp, w0, w1, w2, c0, s0, c1, s1,
     """One run of samples between the same two rows; everything float32 and contiguous."""
     for i in range(out_i.shape[0]):
         t = ramp[i]
-        w = w0 + t * (w1 + t * w2)
-        e_i = a_i[i] + w * (b_i[i] - a_i[i])
-        e_q = a_q[i] + w * (b_q[i] - a_q[i])
-        c = c0 + t * (c1 + t * c2)
-        s = s0 + t * (s1 + t * s2)
-        out_i[i] += e_i * c - e_q * s
-        out_q[i] += e_i * s + e_q * c
+        w = fma(t, fma(t, w2, w1), w0)
+        e_i = fma(w, b_i[i] - a_i[i], a_i[i])
+        e_q = fma(w, b_q[i] - a_q[i], a_q[i])
+        c = fma(t, fma(t, c2, c1), c0)
+        s = fma(t, fma(t, s2, s1), s0)
+        out_i[i] = fma(e_i, c, fma(-e_q, s, out_i[i]))
+        out_q[i] = fma(e_i, s, fma(e_q, c, out_q[i]))
 
 
 @compiled
@@ -175,14 +186,14 @@ def meet_carrier(out, acc, carrier, begin, end):
     for f in range(out.shape[0]):
         feed, in_phase, quadrature = out[f, begin:end], acc[0, f, begin:end], acc[1, f, begin:end]
         for p in range(end - begin):
-            feed[p] = in_phase[p] * cosine[p] - quadrature[p] * sine[p]
+            feed[p] = fma(in_phase[p], cosine[p], -quadrature[p] * sine[p])
 
 
 @compiled
 def fill_carrier(carrier, gain, cycles_per_sample, sample, begin, end):
     """carrier (2, segment) float32: gain × (cos, sin) of the exact phase at sample + p - begin."""
+    cosine, sine = carrier[0], carrier[1]
     for p in range(begin, end):
-        cycles = (sample + p - begin) * cycles_per_sample
-        angle = 2.0 * pi * (cycles - floor(cycles))
-        carrier[0, p] = gain[p] * cos(angle)
-        carrier[1, p] = gain[p] * sin(angle)
+        c, s = turn((sample + p - begin) * cycles_per_sample)
+        cosine[p] = gain[p] * c
+        sine[p] = gain[p] * s

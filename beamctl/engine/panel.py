@@ -52,6 +52,7 @@ class Buffers(NamedTuple):
     stale: NDArray[np.bool_]  # (B,) coef and delay must be made anew from `piece`
     still: NDArray[np.bool_]  # (B,) coef and delay hold until the aim is touched
     piece: NDArray[np.int64]  # (B,) position in the segment from which coef and delay count
+    scratch: NDArray[np.float64]  # (3, N)
     acc: F32  # (2, F, 256)
     total: F32  # (256,) summed demands, then the shared gain
     carrier: F32  # (2, 256)
@@ -66,8 +67,8 @@ class Wiring(NamedTuple):
     raise_taps: F32
     row_taps: F32
     ramp: F32
-    cells: NDArray[np.float64]  # (N, 3)
-    back: NDArray[np.complex128]  # (N,)
+    cells: NDArray[np.float64]  # (4, N) right, out, up, squared distance
+    wanted: NDArray[np.float64]  # (2, N) what undoes polarity, phase and trim, times share
     feed: NDArray[np.int64]
     share: NDArray[np.float64]
     steer: tuple[float, float, float, float]
@@ -176,18 +177,20 @@ def _wiring(spec: PanelSpec, cells: CellMap, air: Air, rate_hz: int) -> Wiring:
     count = np.bincount(cells.feed[live], minlength=cells.feeds)
     turn = np.deg2rad(cells.phase_deg)
     trim = 10.0 ** (cells.trim_db / 20.0)
+    share = np.where(live, 1.0 / np.maximum(count[cells.feed], 1), 0.0)
+    wanted = share * cells.polarity * trim[cells.feed] * np.exp(-1j * turn)
     return Wiring(
         taps_re=np.ascontiguousarray(taps.real, np.float32),
         taps_im=np.ascontiguousarray(taps.imag, np.float32),
         raise_taps=np.ascontiguousarray(interpolation_fir(), np.float32),
         row_taps=kernels.row_taps(),
         ramp=np.arange(SEGMENT, dtype=np.float32),
-        cells=np.ascontiguousarray(cells.at_m, np.float64),
-        back=(cells.polarity * trim[cells.feed] * np.exp(-1j * turn)).astype(np.complex128),
+        cells=np.vstack([cells.at_m.T, np.sum(cells.at_m**2, axis=1)]),
+        wanted=np.vstack([wanted.real, wanted.imag]),
         feed=np.ascontiguousarray(cells.feed, np.int64),
-        share=np.where(live, 1.0 / np.maximum(count[cells.feed], 1), 0.0),
+        share=share,
         steer=(
-            2.0 * np.pi * spec.carrier_hz,
+            spec.carrier_hz,
             1.0 / sound_speed_m_s(air),
             base_delay_s(cells.at_m),
             float(rate_hz * kernels.ROWS),
@@ -227,6 +230,7 @@ def _buffers(wiring: Wiring, feeds: int, rate_hz: int, beams: int) -> Buffers:
         stale=np.ones(beams, np.bool_),
         still=np.zeros(beams, np.bool_),
         piece=np.zeros(beams, np.int64),
+        scratch=np.zeros((3, wiring.cells.shape[1])),
         acc=f32(2, feeds, SEGMENT),
         total=np.ones(SEGMENT, np.float32),
         carrier=f32(2, SEGMENT),
@@ -314,9 +318,10 @@ def _aim(buffers, wiring, b, sample):
         buffers.coef[b],
         buffers.delay[b],
         wiring.cells,
-        wiring.back,
+        wiring.wanted,
         wiring.feed,
         wiring.share,
+        buffers.scratch,
         buffers.aim[b],
         buffers.reach[b],
         float(start),
@@ -324,7 +329,7 @@ def _aim(buffers, wiring, b, sample):
         wiring.steer,
     )
     buffers.stale[b] = False
-    buffers.still[b] = glides.travel_settled(buffers.aim[b], start) and glides.is_settled(
+    buffers.still[b] = glides.travel_settled(buffers.aim[b], start) and glides.reach_settled(
         buffers.reach[b], start
     )
 

@@ -1,6 +1,6 @@
 """Where in a TOML text each key stands: a tree of lines that has the shape of the parsed data.
 
-For text that `tomllib` accepts; it finds keys, it does not check them. The standard parser keeps
+For text that `tomllib` accepts: it finds keys, it does not check them. The standard parser keeps
 no positions, and an error without its line is no help in a long sheet.
 """
 
@@ -103,8 +103,8 @@ class _Scanner:
         elif self.take("{"):
             while not self.closed("}"):
                 self.pair(node)
-        elif not self.skip(_STRING):
-            self.skip(_PLAIN)
+        elif not self.skip(_STRING) and not self.skip(_PLAIN):
+            raise tomllib.TOMLDecodeError(f"Missing value (at line {self.line}, column 1)")
 
     def closed(self, bracket: str) -> bool:
         """Passes gaps and a comma; True when the array or inline table ends here."""

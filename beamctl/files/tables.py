@@ -22,6 +22,7 @@ from beamctl.files.problems import Problem, Source, shown
 
 M = TypeVar("M", bound=BaseModel)
 _PLACE = re.compile(r" \(at (?:line (\d+), column \d+|end of document)\)$")
+MOST_POINTS = 500  # of a line: the time to read a dotted key goes with the square of its parts
 _DIGITS = re.compile("[0-9_]{4000}")
 OF_TABLE = ("missing", "value_error", "too_short")  # errors of a table, not of one of its keys
 expected_by = cache(Expected)
@@ -40,8 +41,12 @@ def read_table(
     file: str, text: str, model: type[M], report: Callable[[Problem], None]
 ) -> Table[M] | None:
     """The model of a text, or of what is sound in it; None when no model can be made of it."""
+    for line, words in enumerate(text.split("\n"), start=1):
+        if words.count(".") > MOST_POINTS:
+            report(Problem(file, line, "", f"more than {MOST_POINTS} points in one line"))
+            return None
     try:
-        source = _parse(file, text)
+        source = Source(file, tomllib.loads(text), locate(text))
         return _fit(source, model, report)
     except RecursionError:
         report(Problem(file, None, "", "values nest too deeply; a show needs four levels"))
@@ -54,11 +59,6 @@ def read_table(
         before = text[: digits.start()] if digits else ""
         report(Problem(file, before.count("\n") + 1, "", "a number of thousands of digits"))
     return None
-
-
-def _parse(file: str, text: str) -> Source:
-    data = tomllib.loads(text)
-    return Source(file, data, locate(text))
 
 
 def _fit(source: Source, model: type[M], report: Callable[[Problem], None]) -> Table[M] | None:

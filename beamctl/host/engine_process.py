@@ -12,6 +12,7 @@ To the host:    {"progress": [what, done, of]}, {"ready": {...}}, {"batch": N, "
 
 from __future__ import annotations
 
+import contextlib
 import gc
 import hashlib
 import json
@@ -47,13 +48,11 @@ def engine_main(
     """Entry point of the process; returns when the host said stop, or went away."""
     send_native_chatter_to(Path(log))
     sys.setswitchinterval(0.0005)
-    engine = Engine(connection, folder, sink_name, Status.attach(Path(status_path)))
     try:
-        engine.run()
+        Engine(connection, folder, sink_name, Status.attach(Path(status_path))).run()
     except BeamctlError as error:
-        engine.tell({"lost": [error.what, error.do]})
-    except (EOFError, BrokenPipeError, ConnectionError):
-        pass
+        with contextlib.suppress(OSError):
+            connection.send_bytes(json.dumps({"lost": [error.what, error.do]}).encode())
 
 
 class Engine:
@@ -83,7 +82,7 @@ class Engine:
 
     def tell(self, message: dict[str, Any]) -> None:
         """Send one message to the host; a host that is gone is noticed elsewhere."""
-        with self._sending:
+        with self._sending, contextlib.suppress(OSError):
             self._connection.send_bytes(json.dumps(message).encode())
 
     def run(self) -> None:

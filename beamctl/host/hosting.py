@@ -19,9 +19,9 @@ from multiprocessing.connection import Client, Connection, Listener
 from pathlib import Path
 from typing import Any
 
-from beamctl.actions import ACTIONS
 from beamctl.errors import DeviceError
 from beamctl.files.reader import load_show
+from beamctl.host.asking import event_of
 from beamctl.host.engine_process import engine_main
 from beamctl.host.journal import Journal
 from beamctl.host.link import encode
@@ -39,6 +39,7 @@ AHEAD_S = 0.025  # how far ahead of the engine acts are handed over
 SLACK_QUANTA = 1  # between what the engine has reached and the sample an event is given
 SNAPSHOT_S = 0.04
 STOP_S = 5.0
+LONGEST_MESSAGE = 65_536
 
 
 class Host:
@@ -61,6 +62,7 @@ class Host:
         self._ready: dict[str, Any] = {}
         self._left: dict[str, Any] | None = None
         self._stopping = False
+        self._failure: DeviceError | None = None
         self._snapshot: tuple[float, bytes] = (-1.0, b"")
         self._status = Status.create(runtime_folder() / f"{show_key(folder)}.status")
         self._listener = Listener(self.address)
@@ -68,13 +70,15 @@ class Host:
         self._engine, self._line = self._start_engine()
 
     def run(self) -> int:
-        """Serve until stopped; returns an exit code."""
+        """Serve until stopped; returns an exit code. DeviceError when the engine cannot start."""
         try:
             while not self._stopping:
                 self._take(TICK_S)
                 self._tick()
         finally:
             self._close()
+        if self._failure is not None:
+            raise self._failure
         return 0
 
     def stop(self) -> None:
@@ -119,6 +123,9 @@ class Host:
         elif "lost" in message:
             self._notices.append(" ".join(message["lost"]))
             self._lose()
+            if not self._ready:  # it never sounded: nobody has to be kept from silence
+                self._failure = DeviceError(*message["lost"])
+                self.stop()
         elif "gone" in message and not self._stopping and self._left is None:
             if self._player.output != "LOST":
                 self._notices.append("engine gone: nothing sounds; end the host and start it again")
@@ -185,10 +192,10 @@ class Host:
         answers: queue.SimpleQueue[bytes] = queue.SimpleQueue()
         try:
             while True:
-                message = json.loads(connection.recv_bytes())
+                message = json.loads(connection.recv_bytes(LONGEST_MESSAGE))
                 self._inbox.put(("desk", message, answers))
                 connection.send_bytes(answers.get())
-        except (EOFError, OSError, ValueError):
+        except (EOFError, OSError, ValueError, RecursionError):
             connection.close()
 
     def _take(self, timeout_s: float) -> None:
@@ -204,22 +211,18 @@ class Host:
         except queue.Empty:
             return
 
-    def _answer(self, message: dict[str, Any]) -> bytes:
-        if message["do"] == "sheet":
+    def _answer(self, message: Any) -> bytes:
+        do = message.get("do") if isinstance(message, dict) else None
+        if do == "sheet":
             return encode(self._picture.sheet())
-        if message["do"] == "snapshot":
+        if do == "snapshot":
             return self._current_snapshot()
-        if message["do"] == "stop":
+        if do == "stop":
             self.stop()
             return encode(Answer(True))
-        return encode(self._act(message["name"], message["arguments"]))
-
-    def _act(self, name: str, arguments: dict[str, Any]) -> Answer:
-        try:
-            event = ACTIONS[name].event(**{"who": "desk"} | arguments)
-        except (KeyError, TypeError):
-            return Answer(False, "bad-type", f"no action {name} with {', '.join(arguments)}")
-        return self._handle(event)
+        if do == "act" and (event := event_of(message)) is not None:
+            return encode(self._handle(event))
+        return encode(Answer(False, "bad-type", "the host knows no such request"))
 
     def _handle(self, event: Event) -> Answer:
         sample = self._now() + SLACK_QUANTA * self.show.rig.quantum

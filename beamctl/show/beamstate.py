@@ -7,6 +7,7 @@ renderer's rows are views into its compiled arrays.
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from math import sqrt
 from typing import Any
 
 import numpy as np
@@ -36,7 +37,12 @@ class Voice:
 
 @dataclass(slots=True)
 class BeamState:
-    """Rows of one beam; see glides.py for their layout. `law` holds one weight row per law."""
+    """Rows of one beam; see glides.py for their layout. `law` holds one weight row per law.
+
+    `level` glides in gain, not in its square: gain and square then both start and stop without a
+    step in slope. The square is what the air hears of one beam; of two on a panel it also hears
+    the product of their gains, and the root of a raised cosine meets zero at a slope.
+    """
 
     rate_hz: int
     level: Row = field(default_factory=lambda: np.zeros(glides.SCALAR_SIZE))
@@ -66,7 +72,7 @@ class BeamState:
 
     def power_at(self, sample: int) -> float:
         """Square of the beam's gain."""
-        return max(0.0, glides.scalar_at(self.level, sample))
+        return max(0.0, glides.scalar_at(self.level, sample)) ** 2
 
     def direction_at(self, sample: int) -> tuple[float, float, float, float]:
         """Unit direction in panel axes, and the distance to the target in metres (0: none)."""
@@ -108,7 +114,8 @@ class BeamState:
     def _level(self, sample: int, args: Any) -> None:
         n = max(int(args["n"]), round(MIN_GLIDE_S * self.rate_hz))
         self._forget(self.level)
-        self._glide(self.level, sample, float(args["power"]), n, MIN_GLIDE_S * self.rate_hz)
+        goal = sqrt(args["power"])
+        self._glide(self.level, sample, goal, n, MIN_GLIDE_S * self.rate_hz)
 
     def _depth(self, sample: int, args: Any) -> None:
         n = max(int(args["n"]), round(MIN_GLIDE_S * self.rate_hz))
@@ -127,6 +134,9 @@ class BeamState:
 
     def _travel(self, sample: int, args: Any) -> None:
         row, n = self.aim, int(args["n"])
+        if "direction" in args and self.reach[glides.TO_FOLLOWS]:
+            # a target without a distance cannot be followed: the focus stays where it was
+            self._refocus(sample, self.reach_per_m_at(sample), n, False)
         x, y, z, distance = glides.travel_at(row, sample)
         step = np.subtract(glides.travel_at(row, sample + 1)[:3], (x, y, z))
         if self.silent(sample) or n == 0 or float(np.abs(step).max()) < 1e-15:
@@ -144,23 +154,22 @@ class BeamState:
         row[glides.DRIFT : glides.DRIFT + 3] = step
         row[glides.DRIFT_N] = EASE_S * self.rate_hz if step.any() else 0.0
         row[glides.EASE] = min(0.5, EASE_S * self.rate_hz / n) if n else 0.5
-        if not line:
-            self._stop_following(sample, distance)
-
-    def _stop_following(self, sample: int, distance_m: float) -> None:
-        """A target without a distance cannot be followed: the focus stays where it was."""
-        if self.reach[glides.TO_FOLLOWS]:
-            value = glides.reach_at(self.reach, sample, distance_m)
-            self.reach[:] = (sample, 0, value, value, 0, 0, 0, 0)
 
     def _reach(self, sample: int, args: Any) -> None:
         self._forget(self.reach)
-        n = int(args["n"])
-        distance = glides.travel_at(self.aim, sample)[3]
-        value = glides.reach_at(self.reach, sample, distance)
         follows = args["per_m"] == "aim"
-        goal = 0.0 if follows else float(args["per_m"])
-        self.reach[:] = (sample, n, value, goal, 0, 0, 0, follows)
+        self._refocus(sample, 0.0 if follows else float(args["per_m"]), int(args["n"]), follows)
+
+    def _refocus(self, sample: int, goal_per_m: float, n: int, follows: bool) -> None:
+        """Take the focus from wherever it is to a goal, keeping its slope at first."""
+        value = self.reach_per_m_at(sample)
+        slope = self.reach_per_m_at(sample + 1) - value
+        if n == 0 or self.silent(sample) or abs(slope) < 1e-15:
+            slope = 0.0
+        over = EASE_S * self.rate_hz if slope else 0.0
+        if slope < 0.0:  # as in `_glide`
+            over = min(over, 2.4 * value / -slope)
+        self.reach[:] = (sample, n, value, goal_per_m, slope, over, 0, follows)
 
     def _play(self, sample: int, args: Any) -> None:
         swap = round(SWAP_S * self.rate_hz)

@@ -114,6 +114,16 @@ def travel_settled(row: Any, sample: float) -> bool:
 
 
 @register_jitable
+def reach_settled(row: Any, sample: float) -> bool:
+    """True when a reach row changes no more by itself; one that follows still moves with the aim.
+
+    Its FROM and TO say nothing where a side follows, so equal ones do not make it settled.
+    """
+    t = sample - row[0]
+    return t >= row[1] and (t >= row[5] or row[4] == 0.0)  # type: ignore[no-any-return]
+
+
+@register_jitable
 def reach_at(row: Any, sample: float, distance_m: float) -> float:
     """Focus in 1/metres (0 is far) of a reach row, for a beam whose target is `distance_m` off."""
     near = 1.0 / distance_m if distance_m > 0.0 else 0.0

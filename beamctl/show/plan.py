@@ -17,7 +17,7 @@ import numpy as np
 
 from beamctl.acoustics.cells import CellMap
 from beamctl.show.beamstate import DEFAULT_TRIM_DB, EASE_S, MIN_GLIDE_S, BeamState
-from beamctl.show.glides import TO
+from beamctl.show.glides import TO, TO_FOLLOWS
 from beamctl.show.records import Record
 from beamctl.show.sheet import Act
 from beamctl.show.targets import Target
@@ -148,19 +148,34 @@ class BeamPlan:
             self._travel(target, sample, n)
 
     def _travel(self, target: Target, sample: int, n: int) -> None:
-        x, y, z, _ = self.state.direction_at(sample)
-        a, b, c = target.unit()
-        angle = acos(min(1.0, max(-1.0, x * a + y * b + z * c)))
-        shortest_s = angle * self.swing[0] / PHASE_RATE + EASE_S
+        shortest_s = self._swing_rad(target, sample) / PHASE_RATE + EASE_S
         if n >= self._n(shortest_s) or shortest_s <= SLOWED_S:
             self._place(target, sample, max(n, self._n(shortest_s)))
             return
-        power = float(self.state.level[TO])
+        power = float(self.state.level[TO]) ** 2
         fall, dark = self._n(DIP_S), self._n(DARK_S)
         self._tell(sample, "level", power=0.0, n=fall)
         self._place(target, sample + fall + dark, 0)
         self.returns_at = sample + fall + 2 * dark
         self._level(sample, power, max(fall, n - fall - 2 * dark))
+
+    def _swing_rad(self, target: Target, sample: int) -> float:
+        """Phase change, radians rms, of a travel that kept its fastest pace all the way.
+
+        A great circle is turned at one pace. A straight line is walked at one pace, which turns
+        the beam fastest, and pulls a focus that follows hardest, where it passes nearest.
+        """
+        x, y, z, distance = self.state.direction_at(sample)
+        if target.point_m is None:
+            a, b, c = target.unit()
+            return acos(min(1.0, max(-1.0, x * a + y * b + z * c))) * self.swing[0]
+        goal = np.array(target.point_m)
+        start = np.array((x, y, z)) * (distance or np.linalg.norm(goal))
+        way = start + np.linspace(0.0, 1.0, 65)[:, np.newaxis] * (goal - start)
+        square = np.sum(way**2, axis=1)
+        turning = np.linalg.norm(np.cross(start, goal)) / square
+        nearing = way @ (goal - start) / square**1.5 * self.state.reach[TO_FOLLOWS]
+        return float(np.max(np.hypot(self.swing[0] * turning, self.swing[1] * nearing)))
 
     def _place(self, target: Target, sample: int, n: int) -> None:
         self.target = target

@@ -1,6 +1,7 @@
 """The two state machines, each one table: what the output may do, and what a cue may do.
 
 A missing entry is a refusal; `refusal` gives its reason word. Nothing else decides a transition.
+No entry leads to TRIPPED yet: it is the exposure guard's, and what may be done in it is said here.
 """
 
 from __future__ import annotations

@@ -15,7 +15,7 @@ from beamctl.files.locate import Key, locate
 Place = tuple[Key, ...]
 SCALARS = [
     "1", "-2.5", "true", '"a # b"', "'c \\'", '"q \\" ]"', "1979-05-27 07:32:00", '""', "''",
-    '"""x"""', '"""\nx = 1\n[no]\n"""', "'''\ny = \"\"\"\n'''", '"""a\\"""" ""b"""""', "nan",
+    '"""x"""', '"""\nx = 1\n[no]\n"""', "'''\ny = \"\"\"\n'''", '"""a\\"" ""b"""""', "nan",
 ]  # fmt: skip
 
 
@@ -107,9 +107,7 @@ def places(data: Any, place: Place = ()) -> list[Place]:
     if not isinstance(data, dict | list):
         return [place]
     inner = data.items() if isinstance(data, dict) else enumerate(data)
-    return [place] * bool(place) + [
-        p for key, value in inner for p in places(value, (*place, key))
-    ]
+    return [place] * bool(place) + [p for key, value in inner for p in places(value, (*place, key))]
 
 
 @given(st.integers(0, 2**32))

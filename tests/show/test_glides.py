@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from itertools import pairwise
 
 import numba
 import numpy as np
@@ -84,7 +85,8 @@ def test_a_level_takes_over_without_a_step_in_value_or_slope(
     after = [glides.scalar_at(state.level, at + d) for d in (0, 1)]
     bend = 0.5 * (math.pi / SHORTEST_N) ** 2  # largest second difference of a 20 ms glide of 1
     assert after[0] == before[0]
-    lost = 2.0 * abs(before[1] - before[0]) / state.level[glides.CARRY_N] if at < n else 0.0
+    carried = state.level[glides.CARRY_N]
+    lost = 2.0 * abs(before[1] - before[0]) / carried if carried > 0.0 else 0.0
     assert after[1] == pytest.approx(before[1], abs=bend + lost + 1e-14)
 
 
@@ -152,7 +154,7 @@ def test_an_arc_travel_stays_on_the_great_circle(
         )
     whole = math.atan2(float(np.linalg.norm(normal)), float(np.dot(start, goal)))
     assert travelled[-1] == pytest.approx(whole, abs=1e-7)
-    assert all(b >= a - 1e-7 for a, b in zip(travelled, travelled[1:], strict=False))
+    assert all(b >= a - 1e-7 for a, b in pairwise(travelled))
 
 
 @given(
@@ -182,16 +184,16 @@ def test_a_travel_takes_over_without_a_step_in_direction_or_its_slope(
     put(1, goal, n, first)
     at = 1 + round(share * n)
 
-    def units() -> np.ndarray:
-        return np.array([state.direction_at(at + d)[:3] for d in (0, 1, 2)])
+    def here_and_next() -> np.ndarray:
+        return np.array([state.direction_at(at + d)[:3] for d in (0, 1)])
 
-    before = units()
+    before = here_and_next()
     put(at, then, n, second)
-    after = units()
+    after = here_and_next()
     assert after[0] == pytest.approx(before[0], abs=1e-14)
-    speed = float(np.abs(before[1] - before[0]).max())
-    lost = 6.0 * speed / (EASE_S * RATE_HZ)  # of the slope, in the two samples looked at
-    assert np.diff(after, axis=0) == pytest.approx(np.diff(before, axis=0), abs=lost + 1e-9)
+    step = before[1] - before[0]
+    lost = 2.1 * float(np.abs(step).max()) / (EASE_S * RATE_HZ)  # (1 - 1/n)² of it is kept
+    assert after[1] - after[0] == pytest.approx(step, abs=lost + 1e-11)
 
 
 @given(directions, points, st.integers(1, RATE_HZ), st.floats(0.0, 1.0))
@@ -268,7 +270,7 @@ def test_compiled_travels_are_the_same_bits(values: tuple[float, ...], sample: f
 
 
 @settings(deadline=None)
-@given(reaches, samples, st.floats(0.0, 50.0))
+@given(reaches, samples, st.just(0.0) | st.floats(0.1, 50.0))
 def test_compiled_reaches_are_the_same_bits(
     values: tuple[float, ...], sample: float, distance_m: float
 ) -> None:

@@ -51,11 +51,12 @@ def direct_feeds(
         [np.sum(taps * np.exp(-2j * np.pi * h * tone_hz * k / (rate / 2))) for h in harmonics]
     )
     late = INTERPOLATION_DELAY + sharing.LOOKAHEAD + kernels.ROW_DELAY
-    omega, slowness, base_s, _ = wiring.steer
+    carrier_hz, slowness, base_s, _ = wiring.steer
+    omega = 2.0 * np.pi * carrier_hz
     out = np.zeros((panel.buffers.out.shape[0], len(samples)))
     path = np.array([state.direction_at(int(s)) for s in samples])
     focus = np.array([state.reach_per_m_at(int(s)) for s in samples])
-    for n, at in enumerate(wiring.cells):
+    for n, at in enumerate(wiring.cells[:3].T):
         far = path[:, :3] @ at
         near = focus > 1e-9
         lead = far.copy()

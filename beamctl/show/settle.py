@@ -1,0 +1,151 @@
+"""What the beams do after a cue, and while its acts run, by the sheet alone: nothing is played.
+
+The state after a cue: every cue of the sheet up to it done in order, all glides at their ends,
+one-shot sounds over, loops sounding. So any cue can be gone back to, and looked at beforehand.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from itertools import groupby
+
+import numpy as np
+
+from beamctl.show.beamstate import DEFAULT_DEPTH, DEFAULT_TRIM_DB
+from beamctl.show.plan import END_FALL_S, END_PAD_S, SLOWED_S
+from beamctl.show.sheet import Act, Cue, Law, Reach
+from beamctl.show.show import Show
+from beamctl.show.targets import Target, target_of
+
+
+@dataclass(frozen=True, slots=True)
+class Settled:
+    """One beam with all its glides at their ends; `target` None is straight ahead."""
+
+    sound: str = ""  # "" when silent
+    trim_db: float = DEFAULT_TRIM_DB
+    depth: float = DEFAULT_DEPTH
+    law: Law = "dsb"
+    reach: Reach = "far"
+    target: Target | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Moment:
+    """The beams once the acts at `at_s` after the GO of cue `ref` are given.
+
+    beams    where each beam is going; a one-shot sound counts until it falls or has ended
+    leaving  beam → the states it may still be on its way from; what it sounds then lies between
+             them and `beams`. A beam that falls is silent in `beams` and sounds here until it ends.
+    """
+
+    ref: str
+    at_s: float
+    beams: dict[str, Settled]
+    leaving: dict[str, tuple[Settled, ...]]
+
+
+@dataclass(slots=True)
+class _Beam:
+    """A beam while the acts of a cue are walked through, in seconds after its GO."""
+
+    now: Settled = Settled()
+    ends_s: float | None = None  # one-shot sounds: when their carrier begins to fall
+    left: tuple[tuple[float, Settled], ...] = ()  # (until, state it comes from)
+
+    def at(self, second: float) -> None:
+        """Let what is over by `second` be over."""
+        if self.ends_s is not None and self.ends_s <= second:
+            self.left += ((self.ends_s + END_FALL_S, self.now),)
+            self.now, self.ends_s = replace(self.now, sound=""), None
+        self.left = tuple((until, state) for until, state in self.left if until > second)
+
+    def take(self, act: Act, show: Show) -> None:
+        """Do one act at its time."""
+        self.at(act.at_s)
+        before, self.now = self.now, _after(self.now, act, show)
+        if before.sound and before != self.now:
+            until = act.at_s + max(act.over_s, act.fall_s or 0.0) + SLOWED_S
+            self.left += ((until, before),)
+        elif not before.sound:  # what still falls takes the change along
+            self.left += tuple(
+                (until, replace(self.now, sound=old.sound, trim_db=old.trim_db))
+                for until, old in self.left
+            )
+        if act.fall_s is not None:
+            self.ends_s = None
+        elif act.sound is not None:
+            length_s = show.sounds[act.sound].seconds + END_PAD_S
+            self.ends_s = None if act.loop else act.at_s + length_s
+
+
+def state_after(show: Show, ref: str) -> dict[str, Settled]:
+    """Every beam after cue `ref`, by its name; "" is the state before the first cue.
+
+    KeyError when the sheet has no such cue.
+    """
+    last = show.sheet.position(ref) if ref else -1
+    beams = _fresh(show)
+    for cue in show.sheet.cue[: last + 1]:
+        _settle(cue, beams, show)
+    return {name: beam.now for name, beam in beams.items()}
+
+
+def acts_of(show: Show) -> Iterator[Moment]:
+    """Every moment of every cue at which acts are given, in the order of the sheet.
+
+    Before its first act a cue finds the state after the one that stands before it in the sheet.
+    """
+    beams = _fresh(show)
+    for cue in show.sheet.cue:
+        for at_s, acts in groupby(_in_time(cue), key=lambda act: act.at_s):
+            for beam in beams.values():
+                beam.at(at_s)
+            for act in acts:
+                beams[act.beam].take(act, show)
+            leaving = {n: tuple(s for _, s in b.left) for n, b in beams.items() if b.left}
+            yield Moment(cue.ref, at_s, {n: b.now for n, b in beams.items()}, leaving)
+        _rest(beams)
+
+
+def _fresh(show: Show) -> dict[str, _Beam]:
+    return {name: _Beam() for name in show.sheet.beam}
+
+
+def _in_time(cue: Cue) -> list[Act]:
+    return sorted(cue.act, key=lambda act: act.at_s)
+
+
+def _settle(cue: Cue, beams: dict[str, _Beam], show: Show) -> None:
+    for act in _in_time(cue):
+        beams[act.beam].take(act, show)
+    _rest(beams)
+
+
+def _rest(beams: dict[str, _Beam]) -> None:
+    for beam in beams.values():
+        beam.at(float("inf"))
+
+
+def _after(state: Settled, act: Act, show: Show) -> Settled:
+    """What one act makes of a beam, its glides at their ends."""
+    if act.fall_s is not None:
+        return replace(state, sound="")
+    if act.reach is not None:
+        state = replace(state, reach=act.reach)
+    if act.aims:
+        panel = show.rig.panel[show.panel_of(act.beam)]
+        target = target_of(act, show.house, panel)
+        if target.point_m is None and state.reach == "aim":
+            state = replace(state, reach=_distance(state.target))
+        state = replace(state, target=target)
+    named = {key: getattr(act, key) for key in ("sound", "trim_db", "depth", "law")}
+    return replace(state, **{key: value for key, value in named.items() if value is not None})
+
+
+def _distance(target: Target | None) -> Reach:
+    """Where the focus stays when the new target has no distance to follow."""
+    if target is None or target.point_m is None:
+        return "far"
+    return float(np.linalg.norm(target.point_m))

@@ -1,0 +1,264 @@
+"""How fast the renderer is, as ratios measured in one run: `python tests/bench/speed.py [FILE]`.
+
+Prints a table (and writes it to FILE when named); exit 1 when a figure falls short of 0.8 of its
+target. Every figure is a median over interleaved rounds, so that a machine whose speed drifts moves
+both sides of a ratio. One core: run it with `taskset -c 0` for steady figures.
+"""
+
+from __future__ import annotations
+
+import os
+
+for _name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"):
+    os.environ[_name] = "1"
+
+import sys
+import tempfile
+import time
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+sys.path.insert(0, str(Path(__file__).parents[1]))
+
+from support.rigs import analytic_tone, grid, make_show
+
+from beamctl.engine import kernels
+from beamctl.engine.panel import SEGMENT, Panel
+from beamctl.engine.renderer import Renderer
+from beamctl.files.reader import load_show
+from beamctl.host import offline
+from beamctl.show.records import Record
+from beamctl.sinks.rf64 import Rf64Writer
+
+RATE = 192_000
+ROUNDS = 40
+NIGHT_TRAM = Path(__file__).parents[2] / "scenes" / "night-tram"
+PERFORMANCE = (
+    (0, "1"),
+    (8, "2"),
+    (14, "3"),
+    (21, "4"),
+    (27, "4.5"),
+    (34, "5"),
+    (45, "6A"),
+    (52, "7"),
+)
+PERFORMANCE_S = 62
+
+
+@dataclass(frozen=True)
+class Figure:
+    """One row of the table; `more` says whether more is better."""
+
+    what: str
+    value: float
+    target: float
+    unit: str
+    more: bool
+
+    @property
+    def holds(self) -> bool:
+        """Within 0.8 of the target."""
+        return self.value >= 0.8 * self.target if self.more else self.value <= self.target / 0.8
+
+
+def seconds(work: Callable[[], object], repeat: int) -> float:
+    """Seconds of one call, over `repeat` calls."""
+    began = time.perf_counter()
+    for _ in range(repeat):
+        work()
+    return (time.perf_counter() - began) / repeat
+
+
+def moving_renderer(columns: int, rows: int, beams: int) -> Renderer:
+    """A renderer whose beams all sound and travel at 60 degrees a second."""
+    names = tuple(f"b{i}" for i in range(beams))
+    show = make_show(names, cells=grid(columns, rows), q=20.0)
+    renderer = Renderer(show, {"p": {"tone": analytic_tone(1000.0, 1.0)}})
+    renderer.put(Record(0, "gate", args={"open": 1, "n": 3840}))
+    for i, name in enumerate(names):
+        first = [np.sin(-0.5), np.cos(-0.5), 0.01 * i]
+        goal = [np.sin(0.5), np.cos(0.5), 0.01 * i]
+        renderer.put(Record(0, "aim", name, args={"direction": first, "n": 0}))
+        renderer.put(Record(0, "play", name, args={"sound": "tone", "loop": True}))
+        renderer.put(Record(0, "level", name, args={"power": 0.01, "n": 3840}))
+        for turn in range(200):
+            to = goal if turn % 2 == 0 else first
+            at = 4000 + turn * RATE
+            renderer.put(Record(at, "aim", name, args={"direction": to, "n": RATE - 1}))
+    out = np.zeros((SEGMENT, show.channels), np.float32)
+    for _ in range(40):
+        renderer.render(out)
+    return renderer
+
+
+def kernel_of(panel: Panel) -> Callable[[], None]:
+    """Delay-and-sum of one segment: row layout, aiming and summing of all beams, carrier."""
+    b, w = panel.buffers, panel.wiring
+    row_at = b.rows.shape[3] - SEGMENT
+
+    def work() -> None:
+        b.acc[:] = 0.0
+        for i in range(len(panel.states)):
+            start = 30_000.0
+            kernels.aim_feeds(
+                b.coef[i], b.delay[i], w.cells, w.wanted, w.feed, w.share, b.scratch,
+                b.aim[i], b.reach[i], start, float(SEGMENT), w.steer,
+            )  # fmt: skip
+            kernels.fill_rows(
+                b.rows[i], b.base[i], w.row_taps, row_at, kernels.ROW_TAPS - 1, SEGMENT
+            )
+            kernels.add_beam(
+                b.acc, b.rows[i], b.coef[i], b.delay[i], w.ramp, row_at, 0, 0, SEGMENT, SEGMENT
+            )
+        kernels.fill_carrier(b.carrier, b.total, w.cycles_per_sample, 30_000, 0, SEGMENT)
+        kernels.meet_carrier(b.out, b.acc, b.carrier, 0, SEGMENT)
+
+    return work
+
+
+def numpy_ways(panel: Panel) -> dict[str, Callable[[], object]]:
+    """The same sum in NumPy, for beams that stand still, from the same envelope at the same accuracy.
+
+    shift matrix   every feed's interpolation taps and phasors in one matrix, times the envelopes at
+                   every whole-sample delay: one product, everything about the aim worked out before
+    gathered rows  the 16 fractional rows by a small product, two of them gathered per feed and beam,
+                   then one batched product with the weights of both
+    """
+    b, taps = panel.buffers, panel.wiring.row_taps
+    beams, feeds = len(panel.states), b.out.shape[0]
+    weights = (b.coef[:, :, 0] + 1j * b.coef[:, :, 1]).astype(np.complex64)
+    carrier = np.exp(2j * np.pi * np.arange(SEGMENT) * 40_000 / RATE).astype(np.complex64)
+    longest = int(b.delay[:, :, 0].max()) // 16 + 8
+    base = np.random.default_rng(1).standard_normal((beams, longest + SEGMENT, 2))
+    envelope = base.astype(np.float32).view(np.complex64)[..., 0]
+    low = np.floor(b.delay[:, :, 0]).astype(int)
+    part = b.delay[:, :, 0] - low
+
+    matrix = np.zeros((feeds, beams, longest), np.complex64)
+    for beam in range(beams):
+        for f in range(feeds):
+            for row, share in (
+                (low[beam, f], 1.0 - part[beam, f]),
+                (low[beam, f] + 1, part[beam, f]),
+            ):
+                at = row // 16
+                matrix[f, beam, at : at + 6] += share * weights[beam, f] * taps[row % 16]
+    matrix = matrix.reshape(feeds, beams * longest)
+    shifts = np.lib.stride_tricks.sliding_window_view(envelope, SEGMENT, axis=1)[:, longest:0:-1]
+
+    def shift_matrix() -> NDArray[np.float32]:
+        delayed = np.ascontiguousarray(shifts).reshape(beams * longest, SEGMENT)
+        return ((matrix @ delayed) * carrier).real
+
+    spread = SEGMENT + longest - 5
+    six = np.lib.stride_tricks.sliding_window_view(envelope, spread, axis=1)[:, 5::-1]
+    both = np.stack([low, low + 1], axis=-1)
+    shares = np.stack([(1.0 - part) * weights, part * weights], axis=-1)
+    shares = np.ascontiguousarray(
+        shares.transpose(1, 0, 2).reshape(feeds, 1, 2 * beams), np.complex64
+    )
+    beam_at = np.arange(beams)[:, None, None]
+    row_at = longest - 5 - both // 16
+    complex_taps = taps.astype(np.complex64)
+
+    def gathered_rows() -> NDArray[np.float32]:
+        rows = complex_taps @ np.ascontiguousarray(six)
+        windows = np.lib.stride_tricks.sliding_window_view(rows, SEGMENT, axis=2)
+        picked = windows[beam_at, both % 16, row_at].transpose(1, 0, 2, 3)
+        picked = np.ascontiguousarray(picked).reshape(feeds, 2 * beams, SEGMENT)
+        return ((shares @ picked)[:, 0] * carrier).real
+
+    assert np.abs(shift_matrix() - gathered_rows()).max() < 1e-4 * np.abs(shift_matrix()).max()
+    return {"shift matrix": shift_matrix, "gathered rows": gathered_rows}
+
+
+def against_numpy() -> tuple[list[Figure], list[str]]:
+    """Kernel with all beams travelling against the best NumPy way with them standing."""
+    panel = moving_renderer(8, 8, 4).panels["p"]
+    work = kernel_of(panel)
+    work()
+    ways = numpy_ways(panel)
+    ours: list[float] = []
+    theirs: dict[str, list[float]] = {name: [] for name in ways}
+    for _ in range(ROUNDS):
+        ours.append(seconds(work, 50))
+        for name, way in ways.items():
+            theirs[name].append(seconds(way, 3))
+    medians = {name: float(np.median(times)) for name, times in theirs.items()}
+    best = min(medians, key=lambda name: medians[name])
+    ratios = np.array(theirs[best]) / np.array(ours)
+    share = 100.0 * float(np.median(ours)) * RATE / SEGMENT
+    notes = [f"NumPy, {name}: {1e6 * t:.0f} µs a segment" for name, t in medians.items()]
+    return [
+        Figure(
+            f"64 × 4 travelling against NumPy ({best})", float(np.median(ratios)), 4.0, "×", True
+        ),
+        Figure("64 × 4 travelling, of one core", share, 8.0, "%", False),
+    ], notes
+
+
+def growth() -> list[Figure]:
+    """Cost per feed and beam at 256 × 8 against 64 × 4: 1 is linear."""
+    small = kernel_of(moving_renderer(8, 8, 4).panels["p"])
+    large = kernel_of(moving_renderer(16, 16, 8).panels["p"])
+    small(), large()
+    ratios, shares = [], []
+    for _ in range(ROUNDS):
+        a, b = seconds(small, 50), seconds(large, 6)
+        ratios.append((b / (256 * 8)) / (a / (64 * 4)))
+        shares.append(100.0 * b * RATE / SEGMENT)
+    return [
+        Figure(
+            "cost of 256 × 8 over 64 × 4, per feed and beam",
+            float(np.median(ratios)),
+            1.0,
+            "×",
+            False,
+        ),
+        Figure("256 × 8 travelling, of one core", float(np.median(shares)), 64.0, "%", False),
+    ]
+
+
+def whole_render() -> Figure:
+    """The shipped show's whole performance to a file, prepared sounds and compiled code ready."""
+    show = load_show(NIGHT_TRAM)
+    samples = PERFORMANCE_S * show.rig.rate_hz
+    gos = [(at * show.rig.rate_hz, ref) for at, ref in PERFORMANCE]
+    rates = []
+    for _ in range(3):
+        records = list(offline.play_through(show, gos, samples))
+        with tempfile.TemporaryDirectory() as folder:
+            began = time.perf_counter()
+            writer = Rf64Writer(Path(folder) / "out.wav", show.rig.rate_hz, show.channels)
+            offline.render(show, records, samples, writer.write, lambda *_: None)
+            writer.close()
+            rates.append(PERFORMANCE_S / (time.perf_counter() - began))
+    return Figure("render of night-tram against real time", float(np.median(rates)), 5.0, "×", True)
+
+
+def main() -> int:
+    """Measure, print, write; 1 when a figure falls short."""
+    figures, notes = against_numpy()
+    figures += growth()
+    figures.append(whole_render())
+    lines = ["| what | measured | target | |", "|---|---|---|---|"]
+    for f in figures:
+        bound = "≥" if f.more else "≤"
+        verdict = "holds" if f.holds else "FALLS SHORT"
+        lines.append(
+            f"| {f.what} | {f.value:.2f} {f.unit} | {bound} {f.target:g} {f.unit} | {verdict} |"
+        )
+    table = "\n".join([*lines, "", *notes])
+    print(table)
+    if len(sys.argv) > 1:
+        Path(sys.argv[1]).write_text(table + "\n", encoding="utf-8")
+    return 0 if all(f.holds for f in figures) else 1
+
+
+if __name__ == "__main__":
+    sys.exit(main())
