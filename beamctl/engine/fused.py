@@ -18,8 +18,7 @@ HAS_FMA = bool(llvm.get_host_cpu_features().get("fma")) or llvm.get_process_trip
 )
 
 
-@intrinsic
-def fma(typing_context: Any, a: Any, b: Any, c: Any) -> Any:
+def _fma(typing_context: Any, a: Any, b: Any, c: Any) -> Any:
     """a × b + c of three floats of one type."""
     if not (isinstance(a, types.Float) and a == b == c):
         raise TypeError(f"fma of {a}, {b}, {c}: three floats of one type")
@@ -31,3 +30,6 @@ def fma(typing_context: Any, a: Any, b: Any, c: Any) -> Any:
         return builder.fadd(builder.fmul(x, y), z)
 
     return a(a, b, c), generate
+
+
+fma: Any = intrinsic(_fma)

@@ -137,13 +137,13 @@ def add_beam(acc, rows, coef, delay, ramp, row_at, piece, begin, end, segment):
                 stop = min(stop, floor((row - d0) / d1) + 1)
             # on to a full wide register, even if the weight leaves 0 to 1 by a little there
             stop = max(stop, x + 1) + piece
-            stop = min(stop + (-stop) % step, segment) - piece
+            stop = min((stop + step - 1) & -step, segment) - piece
             low, high = max(x, begin - piece), min(stop, end - piece)
             if low < high:
                 n = high - low
                 at = row_at + piece + low
-                ra, rb = row % 16, (row + 1) % 16
-                sa, sb = at - row // 16, at - (row + 1) // 16
+                ra, rb = row & 15, (row + 1) & 15
+                sa, sb = at - (row >> 4), at - ((row + 1) >> 4)
                 _add_run(
                     acc[0, f, piece + low : piece + high],
                     acc[1, f, piece + low : piece + high],

@@ -2,6 +2,8 @@
 
 The state after a cue: every cue of the sheet up to it done in order, all glides at their ends,
 one-shot sounds over, loops sounding. So any cue can be gone back to, and looked at beforehand.
+One thing the sheet alone does not tell: a focus that follows a travel which angles cut short stays
+half-way when played; here it is at the travel's end.
 """
 
 from __future__ import annotations
@@ -9,6 +11,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from itertools import groupby
+from math import inf
 
 import numpy as np
 
@@ -65,13 +68,16 @@ class _Beam:
         """Do one act at its time."""
         self.at(act.at_s)
         before, self.now = self.now, _after(self.now, act, show)
+        until = act.at_s + max(act.over_s, act.fall_s or 0.0) + SLOWED_S
         if before.sound and before != self.now:
-            until = act.at_s + max(act.over_s, act.fall_s or 0.0) + SLOWED_S
             self.left += ((until, before),)
-        elif not before.sound:  # what still falls takes the change along
+        elif not before.sound:  # what still falls takes the change along, a longer fall as well
             self.left += tuple(
-                (until, replace(self.now, sound=old.sound, trim_db=old.trim_db))
-                for until, old in self.left
+                (
+                    end if act.fall_s is None else max(end, until),
+                    replace(self.now, sound=old.sound, trim_db=old.trim_db),
+                )
+                for end, old in self.left
             )
         if act.fall_s is not None:
             self.ends_s = None
@@ -88,7 +94,9 @@ def state_after(show: Show, ref: str) -> dict[str, Settled]:
     last = show.sheet.position(ref) if ref else -1
     beams = _fresh(show)
     for cue in show.sheet.cue[: last + 1]:
-        _settle(cue, beams, show)
+        for act in _in_time(cue):
+            beams[act.beam].take(act, show)
+        _pass(beams, inf)
     return {name: beam.now for name, beam in beams.items()}
 
 
@@ -100,13 +108,12 @@ def acts_of(show: Show) -> Iterator[Moment]:
     beams = _fresh(show)
     for cue in show.sheet.cue:
         for at_s, acts in groupby(_in_time(cue), key=lambda act: act.at_s):
-            for beam in beams.values():
-                beam.at(at_s)
+            _pass(beams, at_s)
             for act in acts:
                 beams[act.beam].take(act, show)
             leaving = {n: tuple(s for _, s in b.left) for n, b in beams.items() if b.left}
             yield Moment(cue.ref, at_s, {n: b.now for n, b in beams.items()}, leaving)
-        _rest(beams)
+        _pass(beams, inf)
 
 
 def _fresh(show: Show) -> dict[str, _Beam]:
@@ -117,15 +124,9 @@ def _in_time(cue: Cue) -> list[Act]:
     return sorted(cue.act, key=lambda act: act.at_s)
 
 
-def _settle(cue: Cue, beams: dict[str, _Beam], show: Show) -> None:
-    for act in _in_time(cue):
-        beams[act.beam].take(act, show)
-    _rest(beams)
-
-
-def _rest(beams: dict[str, _Beam]) -> None:
+def _pass(beams: dict[str, _Beam], second: float) -> None:
     for beam in beams.values():
-        beam.at(float("inf"))
+        beam.at(second)
 
 
 def _after(state: Settled, act: Act, show: Show) -> Settled:

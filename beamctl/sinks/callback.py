@@ -104,4 +104,4 @@ def callback(_input, output, count, clock, _flags, user):
     return np.int32(0)
 
 
-ADDRESS = int(callback.address)
+ADDRESS = int(callback.address or 0)

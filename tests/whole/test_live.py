@@ -32,7 +32,6 @@ from support.running import (
 )
 from support.smallshow import FEEDS, FOLLOW_S, RATE_HZ, TRAVEL_AT_S, write_show
 
-from beamctl.host.link import Link
 from beamctl.host.places import socket_address
 
 RAMP = RATE_HZ // 50  # samples of the ramp that closes the output

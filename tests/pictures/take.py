@@ -1,0 +1,73 @@
+"""Takes the README's picture of the desk from the running program: `python tests/pictures/take.py`.
+
+A real host plays the shipped show on the null sink; the desk looks on without a terminal.
+"""
+
+from __future__ import annotations
+
+import asyncio
+import subprocess
+import sys
+import tempfile
+import time
+from os import environ
+from pathlib import Path
+
+from beamctl.desk.app import DeskApp
+from beamctl.desk.courier import Courier
+from beamctl.desk.theme import choose_form
+from beamctl.host.link import Link
+
+HERE = Path(__file__).parent
+SHOW = HERE.parents[1] / "scenes" / "night-tram"
+CUES = ("1", "2", "3")
+
+
+def play(link: Link) -> None:
+    """Arm, and fire the first cues."""
+    until = time.monotonic() + 120.0
+    while time.monotonic() < until:
+        try:
+            if link.snapshot().output == "SHUT":
+                break
+        except OSError:
+            pass
+        time.sleep(0.1)
+    link.act("ready")
+    link.act("confirm")
+    for ref in CUES:
+        link.act("go", ref=ref)
+        time.sleep(1.2)
+
+
+async def picture(link: Link, size: tuple[int, int]) -> str:
+    """The desk as SVG."""
+    courier = Courier(link, time.monotonic)
+    courier.start()
+    try:
+        app = DeskApp(courier, choose_form(plain=False, environ={"TERM": "xterm-256color"}))
+        async with app.run_test(size=size) as pilot:
+            await pilot.pause(1.0)
+            return app.export_screenshot(title="beamctl desk scenes/night-tram")
+    finally:
+        courier.stop()
+
+
+def main() -> None:
+    """Play, and write desk.svg."""
+    with tempfile.TemporaryDirectory() as folder:
+        environ["BEAMCTL_RUNTIME"] = environ["BEAMCTL_STATE"] = folder
+        host = subprocess.Popen([sys.executable, "-m", "beamctl", "host", str(SHOW)])
+        try:
+            link = Link(SHOW)
+            play(link)
+            svg = asyncio.run(picture(link, (110, 34)))
+            (HERE / "desk.svg").write_text(svg, encoding="utf-8")
+            Link(SHOW).stop_host()
+            host.wait(20.0)
+        finally:
+            host.kill()
+
+
+if __name__ == "__main__":
+    main()
