@@ -207,17 +207,22 @@ def render(
 def replay(log: Path, output: Path | None) -> None:
     """Render the journal LOG again and compare with what left then. Exit 1 when it differs."""
     from beamctl.host import offline
-    from beamctl.host.journal import read_journal
     from beamctl.sinks.rf64 import Rf64Writer
 
-    header, _ = read_journal(log)
-    writer = Rf64Writer(output, header.rate_hz, header.channels) if output else None
-    with _bar(True) as progress:
-        write = writer.write if writer else _discard
-        digest, expected = offline.replay(log, write, progress)
+    found, records = offline.recall(log)
+    last = records[-1]
+    writer = Rf64Writer(output, found.rig.rate_hz, found.channels) if output else None
+    write = writer.write if writer else _discard
+    try:
+        with _bar(True) as progress:
+            digest = offline.render(found, records, last.sample, write, progress)
+    except BaseException:
+        if writer:
+            writer.abandon()
+        raise
     if writer:
         writer.close()
-    same = digest == expected
+    same = digest == last.args["sha256"]
     click.echo(
         f"{log.name}: {'the same samples' if same else 'DIFFERENT SAMPLES'}, sha256 {digest}"
     )

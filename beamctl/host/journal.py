@@ -16,6 +16,7 @@ from typing import Any, TextIO
 
 from beamctl import __version__
 from beamctl.errors import DeviceError, ShowError
+from beamctl.host.loading import digests
 from beamctl.show.records import Record
 from beamctl.show.show import Show
 
@@ -43,7 +44,7 @@ class Journal:
             "journal": LAYOUT,
             "began": datetime.now(UTC).isoformat(timespec="milliseconds"),
             "folder": show.folder,
-            "digests": dict(show.digests),
+            "digests": digests(show),
             "rate_hz": show.rig.rate_hz,
             "channels": show.channels,
             "sink": sink,

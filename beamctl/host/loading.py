@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 from collections.abc import Callable, Mapping
 from pathlib import Path
 
@@ -29,3 +30,12 @@ def prepare_sounds(show: Show, progress: Progress) -> Sounds:
         settings = Preparation.at(show.rig.panel[panel].carrier_hz, show.rig.rate_hz)
         sounds[panel][sound] = np.asarray(prepared(Path(show.sounds[sound].path), settings))
     return sounds
+
+
+def digests(show: Show) -> dict[str, str]:
+    """SHA-256 in hex of every file that a show is played from, by its name in the folder."""
+    found = dict(show.digests)
+    for name, facts in show.sounds.items():
+        with Path(facts.path).open("rb") as file:
+            found[f"sounds/{name}"] = hashlib.file_digest(file, "sha256").hexdigest()
+    return found

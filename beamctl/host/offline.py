@@ -15,7 +15,7 @@ from beamctl.engine.renderer import Renderer
 from beamctl.errors import ShowError
 from beamctl.files.reader import load_show
 from beamctl.host.journal import read_journal
-from beamctl.host.loading import prepare_sounds
+from beamctl.host.loading import digests, prepare_sounds
 from beamctl.host.warming import warm
 from beamctl.show.events import Confirm, Go, Ready
 from beamctl.show.player import Player
@@ -86,14 +86,15 @@ def left(samples: int, digest: str) -> Record:
     return Record(samples, "left", args={"sha256": digest})
 
 
-def replay(path: Path, write: Write, progress: Progress) -> tuple[str, str]:
-    """Render a journal again; returns its SHA-256 and the one that the journal ends with.
+def recall(path: Path) -> tuple[Show, list[Record]]:
+    """The show that a journal was made from, and its records up to `left`.
 
     ShowError when the show has changed since, or the journal was cut before its end.
     """
     header, kept = read_journal(path)
     show = load_show(Path(header.folder))
-    changed = [n for n, d in show.digests.items() if header.digests.get(n) != d]
+    now = digests(show)
+    changed = sorted(n for n in now | header.digests if now.get(n) != header.digests.get(n))
     if changed:
         raise ShowError(
             f"{header.folder}: {', '.join(changed)} changed since {path.name}",
@@ -102,6 +103,4 @@ def replay(path: Path, write: Write, progress: Progress) -> tuple[str, str]:
     records = list(kept)
     if not records or records[-1].what != "left":
         raise ShowError(f"{path}: ends before its `left` line", "the host was cut off")
-    last = records[-1]
-    digest = render(show, records, last.sample, write, progress)
-    return digest, str(last.args["sha256"])
+    return show, records

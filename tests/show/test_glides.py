@@ -210,7 +210,7 @@ def test_a_focus_that_follows_is_at_the_target(
     state.apply(aim(sample, start, n, "direction"))  # a target without a distance
     held = state.reach_per_m_at(sample)
     assert held > 0.0
-    assert state.reach_per_m_at(sample + 2 * n) == held
+    assert state.reach_per_m_at(sample + n + round(EASE_S * RATE_HZ)) == held
 
 
 # -- compiled ---------------------------------------------------------------------------------

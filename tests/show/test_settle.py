@@ -19,7 +19,7 @@ from beamctl.show.show import Show
 from beamctl.show.targets import Target
 
 GAP_S = 20.0  # longer than any cue below
-SWING = 1.055  # a rise taken over r before its end: 1 - sin²(π r / 2) + 4/27 π/2 sin(π r) at most
+SWING = 1.055  # gain of a rise taken over r before its end: 1 - sin²(π r / 2) + 4/27 π/2 sin(π r)
 
 
 def show_of(*cues: dict[str, Any]) -> Show:
@@ -237,4 +237,4 @@ def test_what_sounds_inside_a_cue_lies_between_the_states_of_its_moments(
             ends = [s for s in (settled, *moment.leaving.get(name, ())) if s.sound]
             power = player.plans[name].state.power_at(sample + round(share * RATE_HZ * 0.001))
             loudest = max((10.0 ** (s.trim_db / 10.0) for s in ends), default=0.0)
-            assert power <= loudest * SWING + 1e-12
+            assert power <= loudest * SWING**2 + 1e-12
