@@ -36,6 +36,7 @@ numba.config.CACHE_DIR = str(cache_folder())  # type: ignore[attr-defined]
 
 # No contraction into fused multiply-adds: whether the compiler fuses depends on the loop it is in, and
 # the samples would depend on where a block ends.
-compiled = numba.njit(cache=True, nogil=True, error_model="numpy")
+KEPT = True  # on disk
+compiled = numba.njit(cache=KEPT, nogil=True, error_model="numpy")
 
 jitable = register_jitable  # lends a plain function of a pure package to compiled code

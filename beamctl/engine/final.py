@@ -1,0 +1,342 @@
+"""Compiled: the final stage, the last thing that touches a sample. Ring in, device out.
+
+No Python, no allocation, no lock, and no arithmetic shortcuts that assume a number is a number. For
+every block it decides once, at the block's first frame, whether the gate may be open; then, frame by
+frame: what is not finite becomes 0 and a latched fault; a panel whose samples would pass its ceiling
+is held by one smooth gain that sees the peaks coming in the ring; what passes it all the same is cut
+off, and that is a fault too.
+
+A closed gate stays closed until it is asked anew: neither a lease that comes back nor a device that
+flows again opens it. Only a ring that ran dry for a moment comes back by itself, by the ramp.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from llvmlite import ir
+from numba import types
+from numba.extending import intrinsic
+
+from beamctl.engine import layout as at
+from beamctl.engine.compiled import compiled
+from beamctl.show.glides import is_settled, scalar_at
+
+MAGNITUDE = np.int32(0x7FFFFFFF)  # a float32's bits without its sign
+NOT_FINITE = np.int32(0x7F800000)  # the bits of infinity; above them nothing is a number
+JUST_UNDER = 1.0 - 5e-7  # so that rounding to float32 never passes the limit
+RELEASE = 0.997  # of a held peak, per chunk: 6 dB in 77 ms at 192 kHz
+
+
+def _build_fence(_typing_context):
+    """Nothing moves across: what was copied is seen before the position that announces it."""
+
+    def build(context, builder, _signature, _arguments):
+        builder.fence("seq_cst")
+        return context.get_dummy_value()
+
+    return types.void(), build
+
+
+fence = intrinsic(_build_fence)
+
+
+def _build_float_bits(_typing_context, _value):
+    def build(_context, builder, _signature, arguments):
+        return builder.bitcast(arguments[0], ir.IntType(32))
+
+    return types.int32(types.float32), build
+
+
+def _build_bits_float(_typing_context, _bits):
+    def build(_context, builder, _signature, arguments):
+        return builder.bitcast(arguments[0], ir.FloatType())
+
+    return types.float32(types.int32), build
+
+
+float_bits = intrinsic(_build_float_bits)
+bits_float = intrinsic(_build_bits_float)
+
+
+@compiled
+def push(memory, block):
+    """Append (n, channels) float32; the caller has made sure that the ring has room."""
+    frames, channels, written = memory[at.FRAMES], memory[at.CHANNELS], memory[at.WRITTEN]
+    ring = memory[at.SAMPLES :].view(np.float32)
+    fence()
+    start = written % frames
+    straight = min(block.shape[0], frames - start)
+    flat = block.reshape(block.size)
+    _copy(flat, 0, ring, start * channels, straight * channels)
+    _copy(flat, straight * channels, ring, 0, (block.shape[0] - straight) * channels)
+    fence()
+    memory[at.WRITTEN] = written + block.shape[0]
+    if memory[at.WRITTEN] - memory[at.READ] + block.shape[0] > frames:
+        memory[at.FLOWING] = 1  # the first full ring flows
+
+
+@compiled
+def pull(memory, out, count):
+    """Fill out (count × channels,) float32 with the next frames, finished."""
+    channels = memory[at.CHANNELS]
+    for k in range(np.uint64(count * channels)):
+        out[k] = np.float32(0.0)
+    memory[at.CALLBACKS] += 1
+    memory[at.BLOCK] = max(memory[at.BLOCK], count)
+    if memory[at.FLOWING] == 0:
+        return
+    read = memory[at.READ]
+    held = memory[at.WRITTEN] - read
+    fence()
+    _decide(memory, read)
+    _scan(memory, read + held)
+    taken = min(held, count)
+    sounded = _finish(memory, out, read, taken)
+    if taken < count:
+        _went_dry(memory, read + taken)
+    memory[at.SOUNDED] += sounded
+    fence()
+    memory[at.READ] = read + taken
+
+
+@compiled
+def note_time(memory, now_ns):
+    """When the device asked, for the longest gap and the drift of its clock."""
+    if memory[at.CALLBACKS] > 0 and now_ns > 0:
+        memory[at.LONGEST_NS] = max(memory[at.LONGEST_NS], now_ns - memory[at.LAST_NS])
+    memory[at.LAST_NS] = now_ns
+    memory[at.LAST_READ] = memory[at.READ]
+
+
+@compiled
+def _decide(memory, sample):
+    """Open or close the gate at `sample`."""
+    gate = memory[at.GATE]
+    hushed = memory[at.HUSH] != memory[at.SEEN_HUSH]
+    memory[at.SEEN_HUSH] = memory[at.HUSH]
+    asked = memory[at.OPEN_ASK] != memory[at.SEEN_OPEN]
+    memory[at.SEEN_OPEN] = memory[at.OPEN_ASK]
+    leased = sample < memory[at.LEASE_UNTIL]
+    if gate == 1 and (hushed or not leased):
+        _ramp(memory, sample, memory[at.RAMP_N], 0.0)
+        _log(memory, sample, at.HUSHED if hushed else at.LEASE_OVER, memory[at.RAMP_N])
+    elif gate == 0 and asked and leased and not hushed:
+        _ramp(memory, sample, memory[at.OPEN_N], 1.0)
+        _log(memory, sample, at.OPENED, memory[at.OPEN_N])
+
+
+@compiled
+def _ramp(memory, sample, n, goal):
+    """Take the gate from wherever it is to `goal` over n frames, square of the gain, no step in slope.
+
+    The arithmetic is that of BeamState's level glides, so that a journal's gate records give the same
+    samples.
+    """
+    row = memory[at.GATE_ROW : at.GATE_ROW + 6].view(np.float64)
+    value = scalar_at(row, float(sample))
+    slope = scalar_at(row, float(sample + 1)) - value
+    over = float(memory[at.RAMP_N])
+    if abs(slope) < 1e-15:
+        slope = 0.0
+    if slope < 0.0:
+        over = min(over, 4.0 * value / -slope)
+    row[0], row[1], row[2], row[3], row[4] = float(sample), float(n), value, goal, slope
+    row[5] = over if slope != 0.0 else 0.0
+    memory[at.GATE] = 1 if goal > 0.0 else 0
+
+
+@compiled
+def _went_dry(memory, sample):
+    """The ring had too little: count it, and come back by the ramp when it flows again."""
+    memory[at.EMPTY] += 1
+    if memory[at.DRY] != sample + 1:  # once per drought
+        memory[at.DRY] = sample + 1
+        _log(memory, sample, at.WENT_DRY, memory[at.RAMP_N])
+    if memory[at.GATE] == 1:
+        row = memory[at.GATE_ROW : at.GATE_ROW + 6].view(np.float64)
+        row[0], row[1], row[2] = float(sample), float(memory[at.RAMP_N]), 0.0
+        row[3], row[4], row[5] = 1.0, 0.0, 0.0
+
+
+@compiled
+def _log(memory, sample, kind, value):
+    """One event, for whoever keeps the journal."""
+    place = at.EVENT_AT + (memory[at.EVENTS] % at.EVENTS_KEPT) * at.EVENT_WORDS
+    memory[place] = sample
+    memory[place + 1] = kind
+    memory[place + 2] = value
+    fence()
+    memory[at.EVENTS] += 1
+
+
+@compiled
+def _scan(memory, until):
+    """Take the peaks of every chunk that is whole before frame `until`, per panel."""
+    frames, channels = memory[at.FRAMES], memory[at.CHANNELS]
+    bits = memory[at.SAMPLES :].view(np.int32)
+    chunk = memory[at.SCANNED]
+    while (chunk + 1) * at.CHUNK <= until:
+        for panel in range(memory[at.PANELS]):
+            first, feeds = memory[at.FIRSTS + panel], memory[at.FEEDS + panel]
+            largest = np.int32(0)
+            for i in range(at.CHUNK):
+                start = ((chunk * at.CHUNK + i) % frames) * channels + first
+                frame = _largest(bits, start, feeds)
+                # what is not finite is dealt with when it is sent, and is no peak
+                largest = max(largest, frame if frame < NOT_FINITE else np.int32(0))
+            _demand(memory, panel, chunk, bits_float(largest))
+        chunk += 1
+    memory[at.SCANNED] = chunk
+
+
+@compiled
+def _largest(bits, start, count):
+    """Largest magnitude of `count` floats, as its bits.
+
+    Without the sign, floats are in the order of their bits, infinity and what is not a number above
+    all others: a comparison that no shortcut of arithmetic can break, and that the compiler widens.
+    """
+    largest = np.int32(0)
+    for k in range(np.uint64(count)):
+        largest = max(largest, np.int32(bits[np.uint64(start) + k] & MAGNITUDE))
+    return largest
+
+
+@compiled
+def _demand(memory, panel, chunk, peak):
+    """Hold, release and average: a demand that never falls short of the peak, and never jumps.
+
+    The demand of chunk c covers the chunks c - SMOOTH … c, and is used for chunk c - SMOOTH + 1.
+    """
+    peaks = memory[at.PEAKS + panel * at.HOLD : at.PEAKS + (panel + 1) * at.HOLD].view(np.float64)
+    held = memory[at.HELD + panel * at.SMOOTH : at.HELD + (panel + 1) * at.SMOOTH].view(np.float64)
+    most = float(peak)
+    for k in range(at.HOLD - 1):
+        peaks[k] = peaks[k + 1]
+        most = max(most, peaks[k])
+    peaks[at.HOLD - 1] = float(peak)
+    released = held[at.SMOOTH - 1] * RELEASE
+    total = 0.0
+    for k in range(at.SMOOTH - 1):
+        held[k] = held[k + 1]
+        total += held[k]
+    held[at.SMOOTH - 1] = max(most, released)
+    total += held[at.SMOOTH - 1]
+    place = at.DEMANDS + panel * at.DEMANDS_KEPT + chunk % at.DEMANDS_KEPT
+    memory[place : place + 1].view(np.float64)[0] = total / at.SMOOTH
+
+
+@compiled
+def _finish(memory, out, read, taken):
+    """Copy `taken` frames through gain, gate and the last check; 1 when anything sounded."""
+    sounded = 0
+    for panel in range(memory[at.PANELS]):
+        limit = _limit(memory, panel)
+        i = 0
+        while i < taken:
+            # one chunk at a time: its demand is known at both its ends
+            sample = read + i
+            n = min(taken - i, at.CHUNK - sample % at.CHUNK)
+            chunk = sample // at.CHUNK
+            before = _demand_of(memory, panel, chunk + at.SMOOTH - 1)
+            after = _demand_of(memory, panel, chunk + at.SMOOTH)
+            if max(before, after) > 0.0:
+                sounded |= _finish_chunk(memory, out, panel, read, i, n, before, after, limit)
+            i += n
+    return sounded
+
+
+@compiled
+def _finish_chunk(memory, out, panel, read, begin, n, before, after, limit):
+    """Frames begin … begin + n of a block, of one panel, inside one chunk; 1 when the gate let any out."""
+    frames, channels = memory[at.FRAMES], memory[at.CHANNELS]
+    first, feeds = memory[at.FIRSTS + panel], memory[at.FEEDS + panel]
+    ring = memory[at.SAMPLES :].view(np.float32)
+    row = memory[at.GATE_ROW : at.GATE_ROW + 6].view(np.float64)
+    still = is_settled(row, float(read + begin))
+    gate = np.float32(max(0.0, scalar_at(row, float(read + begin))))
+    held = max(before, after) > limit
+    limit = np.float32(limit)
+    limit_bits = float_bits(limit)
+    sounded = 0
+    for i in range(begin, begin + n):
+        sample = read + i
+        if not still:
+            gate = np.float32(max(0.0, scalar_at(row, float(sample))))
+        if gate == np.float32(0.0):
+            continue
+        gain = gate
+        if held:
+            share = (sample % at.CHUNK) / at.CHUNK
+            demand = before + (after - before) * share
+            if demand > limit:
+                gain = np.float32(gate * JUST_UNDER * limit / demand)
+        source = (sample % frames) * channels + first
+        target = i * channels + first
+        wrong = _send(ring, source, out, target, feeds, gain, limit, limit_bits)
+        if wrong != 0:
+            _tell_wrong(memory, sample, first, wrong)
+        sounded = 1
+    return sounded
+
+
+@compiled
+def _limit(memory, panel):
+    """What no sample of a panel may pass: the lower of its ceiling and its rating."""
+    ceiling = memory[at.CEILINGS + panel : at.CEILINGS + panel + 1].view(np.float64)[0]
+    rating = memory[at.RATINGS + panel : at.RATINGS + panel + 1].view(np.float64)[0]
+    if not (ceiling >= 0.0):  # a ceiling that is not a number lets nothing out
+        ceiling = 0.0
+    return min(ceiling, rating)
+
+
+@compiled
+def _demand_of(memory, panel, chunk):
+    """Demand of a panel at a chunk's mark; the newest there is, near the ring's end."""
+    newest = memory[at.SCANNED] - 1
+    if newest < 0:
+        return 0.0
+    place = at.DEMANDS + panel * at.DEMANDS_KEPT + min(chunk, newest) % at.DEMANDS_KEPT
+    return memory[place : place + 1].view(np.float64)[0]
+
+
+@compiled
+def _send(ring, source, out, target, feeds, gain, limit, limit_bits):
+    """One frame of one panel; 0, or 1 + feed of a sample not finite, or -(1 + feed) of one cut off."""
+    for f in range(np.uint64(feeds)):
+        out[np.uint64(target) + f] = gain * ring[np.uint64(source) + f]
+    if _largest(out.view(np.int32), target, feeds) <= limit_bits:
+        return 0
+    wrong = 0
+    for f in range(feeds):
+        value = out[target + f]
+        if not (abs(value) <= limit):
+            if np.isfinite(ring[source + f]):
+                out[target + f] = limit if value > 0.0 else -limit
+                wrong = -(f + 1) if wrong <= 0 else wrong
+            else:
+                out[target + f] = np.float32(0.0)
+                wrong = f + 1
+    return wrong
+
+
+@compiled
+def _tell_wrong(memory, sample, first, wrong):
+    """Latch a fault or a clip with its feed; the first of a run is logged."""
+    feed = first + abs(wrong)
+    if wrong > 0:
+        if memory[at.FAULTS] == 0:
+            memory[at.FAULT_FEED] = feed
+            _log(memory, sample, at.FAULT, feed)
+        memory[at.FAULTS] += 1
+    else:
+        if memory[at.CLIPS] == 0:
+            _log(memory, sample, at.CLIP, feed)
+        memory[at.CLIPS] += 1
+
+
+@compiled
+def _copy(source, start, target, place, count):
+    """Copy `count` floats; unsigned indices, so that none is taken from the end as in Python."""
+    for k in range(np.uint64(count)):
+        target[np.uint64(place) + k] = source[np.uint64(start) + k]

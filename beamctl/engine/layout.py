@@ -1,0 +1,53 @@
+"""The block of memory between the engine, its device and whoever watches: what lies where.
+
+One file-backed map of int64 words, shared by processes. Every word has one writer. Words of
+different writers lie on cache lines of their own. Positions count frames since the stream began and
+only grow, so ring fill = WRITTEN - READ.
+"""
+
+from __future__ import annotations
+
+# the render thread
+WRITTEN, FLOWING = 0, 1
+# whoever grants (the host; later the guard): the lease is a sample number, see also CEILINGS
+LEASE_UNTIL = 8
+# the host; HUSH may be raised by anyone, and only ever grows
+OPEN_ASK, OPEN_N, HUSH = 16, 17, 18
+# the final stage
+READ, CALLBACKS, EMPTY, BLOCK, LAST_NS, LONGEST_NS = 24, 25, 26, 27, 28, 29
+SEEN_OPEN, SEEN_HUSH, GATE, EVENTS = 30, 31, 32, 33
+FAULTS, FAULT_FEED, CLIPS, SOUNDED, SCANNED, DRY = 34, 35, 36, 37, 38, 39
+LAST_READ = 40  # READ at LAST_NS
+# set once
+FRAMES, CHANNELS, PANELS, RAMP_N, SIZE = 48, 49, 50, 51, 52
+HEADER = 64
+
+# kinds of events that the final stage logs, with their sample
+OPENED, HUSHED, LEASE_OVER, WENT_DRY, FAULT, CLIP = range(1, 7)
+EVENT_NAMES = ("", "opened", "hushed", "lease-over", "dry", "fault", "clip")
+EVENT_WORDS = 4  # sample, kind, value, spare
+EVENTS_KEPT = 256
+
+MAX_PANELS = 64
+CHUNK = 64  # frames a peak is taken over
+SMOOTH = 8  # chunks that a panel's demand is averaged over
+HOLD = SMOOTH + 2  # chunks a peak is held
+LOOKAHEAD = (SMOOTH + 1) * CHUNK  # frames by which the final stage looks into the ring
+
+# offsets in words
+EVENT_AT = HEADER
+GATE_ROW = EVENT_AT + EVENTS_KEPT * EVENT_WORDS  # 8 float64: a scalar row of show/glides.py
+CEILINGS = GATE_ROW + 8  # float64 per panel, written by whoever grants
+RATINGS = CEILINGS + MAX_PANELS  # float64 per panel: full drive, max_volts over volts at full scale
+FIRSTS = RATINGS + MAX_PANELS  # int64 per panel: first channel
+FEEDS = FIRSTS + MAX_PANELS  # int64 per panel: how many channels
+PEAKS = FEEDS + MAX_PANELS  # float64 (panels, HOLD)
+HELD = PEAKS + MAX_PANELS * HOLD  # float64 (panels, SMOOTH)
+DEMANDS = HELD + MAX_PANELS * SMOOTH  # float64 (panels, DEMANDS_KEPT), by chunk number
+DEMANDS_KEPT = 4096  # chunks; a ring is shorter
+SAMPLES = DEMANDS + MAX_PANELS * DEMANDS_KEPT  # float32 (frames, channels)
+
+
+def words_needed(frames: int, channels: int) -> int:
+    """Length of the whole block in words."""
+    return SAMPLES + (frames * channels + 1) // 2
