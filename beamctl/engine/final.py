@@ -93,7 +93,7 @@ def pull(memory, out, count):
     taken = min(held, count)
     sounded = _finish(memory, out, read, taken)
     if taken < count:
-        _went_dry(memory, read + taken)
+        went_dry(memory, read + taken)
     memory[at.SOUNDED] += sounded
     fence()
     memory[at.READ] = read + taken
@@ -146,7 +146,7 @@ def _ramp(memory, sample, n, goal):
 
 
 @compiled
-def _went_dry(memory, sample):
+def went_dry(memory, sample):
     """The ring had too little: count it, and come back by the ramp when it flows again."""
     memory[at.EMPTY] += 1
     if memory[at.DRY] != sample + 1:  # once per drought

@@ -48,9 +48,18 @@ class Outlet:
 
     @classmethod
     def create(
-        cls, path: Path | None, frames: int, channels: int, panels: Sequence[Wire], ramp_n: int
+        cls,
+        path: Path | None,
+        frames: int,
+        channels: int,
+        panels: Sequence[Wire],
+        ramp_n: int,
+        start: int = 0,
     ) -> Outlet:
-        """A fresh outlet, gate closed and nothing granted, in a file or in this process alone."""
+        """A fresh outlet, gate closed and nothing granted, in a file or in this process alone.
+
+        Its first frame is number `start`, a multiple of layout.CHUNK.
+        """
         frames = max(frames, at.LOOKAHEAD + 2 * at.CHUNK)
         frames = min(frames, at.CHUNK * (at.DEMANDS_KEPT - 2 * at.HOLD))
         size = at.words_needed(frames, channels)
@@ -64,6 +73,7 @@ class Outlet:
         outlet = cls(memory)
         memory[at.FRAMES], memory[at.CHANNELS] = frames, channels
         memory[at.PANELS], memory[at.RAMP_N], memory[at.SIZE] = len(panels), ramp_n, size
+        memory[at.WRITTEN], memory[at.READ], memory[at.SCANNED] = start, start, start // at.CHUNK
         for i, wire in enumerate(panels):
             memory[at.FIRSTS + i], memory[at.FEEDS + i] = wire.first, wire.feeds
             outlet._floats[at.RATINGS + i] = wire.rating
@@ -73,6 +83,26 @@ class Outlet:
     def attach(cls, path: Path) -> Outlet:
         """The outlet at `path`."""
         return cls(np.asarray(np.memmap(path, np.int64, "r+")))
+
+    @property
+    def channels(self) -> int:
+        """Channels of a frame."""
+        return self.count(at.CHANNELS)
+
+    @property
+    def frames(self) -> int:
+        """Length of the ring."""
+        return self.count(at.FRAMES)
+
+    @property
+    def callbacks(self) -> int:
+        """How often frames were asked for."""
+        return self.count(at.CALLBACKS)
+
+    @property
+    def block(self) -> int:
+        """The most frames asked for at once."""
+        return self.count(at.BLOCK)
 
     # -- the render thread ------------------------------------------------------------------------
 
@@ -97,6 +127,10 @@ class Outlet:
     def flow(self) -> None:
         """Let a ring flow that is not full yet."""
         self.memory[at.FLOWING] = 1
+
+    def run_dry(self) -> None:
+        """Do at the next frame what a ring that ran dry does to the gate."""
+        final.went_dry(self.memory, self.count(at.READ))
 
     # -- whoever grants and asks --------------------------------------------------------------------
 
@@ -132,8 +166,8 @@ class Outlet:
         return int(self.memory[word])
 
     @property
-    def gate_power(self) -> float:
-        """Square of the gate's gain at the frame that is read next."""
+    def gate_gain(self) -> float:
+        """Gain of the gate at the frame that is read next."""
         from beamctl.show.glides import scalar_at
 
         row = self._floats[at.GATE_ROW : at.GATE_ROW + 6]

@@ -80,14 +80,16 @@ def read_journal(path: Path) -> tuple[Header, Iterator[Record]]:
     ShowError when the file is no journal.
     """
     try:
-        lines = path.read_text(encoding="utf-8").splitlines()
+        lines = path.read_bytes().split(b"\n")
+        if lines[-1] == b"":
+            del lines[-1]
         first: dict[str, Any] = json.loads(lines[0])
         if first["journal"] != LAYOUT:
             raise ValueError(first["journal"])
         header = Header(first["folder"], first["digests"], first["rate_hz"], first["channels"])
     except OSError as error:
         raise ShowError(f"{path}: {error.strerror}", "name a journal that exists") from error
-    except (ValueError, KeyError, IndexError, TypeError) as error:
+    except (ValueError, LookupError, TypeError) as error:
         raise ShowError(
             f"{path}: not a journal",
             "journals end in .jsonl; `beamctl host` names the one it writes",
@@ -95,10 +97,10 @@ def read_journal(path: Path) -> tuple[Header, Iterator[Record]]:
     return header, _records(path, lines[1:])
 
 
-def _records(path: Path, lines: list[str]) -> Iterator[Record]:
+def _records(path: Path, lines: list[bytes]) -> Iterator[Record]:
     for number, line in enumerate(lines, start=2):
         try:
-            yield Record.from_json(line)
+            yield Record.from_json(line.decode())
         except ValueError as error:
             if number == len(lines) + 1:
                 return

@@ -176,7 +176,7 @@ class BeamState:
         heard = [] if self.silent(sample) else self.voices
         self.voices = [v for v in heard if not self._faded(v, sample)]
         for voice in self.voices:  # those on their way out too, so that the weights sum to 1
-            self._fade(voice, sample, swap)
+            self._glide(voice.weight, sample, 0.0, swap)
         first, n = (0.0, swap) if self.voices else (1.0, 0)
         weight = np.array((sample, n, first, 1.0, 0.0, 0.0))
         self.voices.append(Voice(str(args["sound"]), sample, bool(args["loop"]), weight))
@@ -184,11 +184,7 @@ class BeamState:
     def _stop(self, sample: int, args: Any) -> None:
         for voice in self.voices:
             if voice.weight[glides.TO] != 0.0:
-                self._fade(voice, sample, int(args["n"]))
-
-    def _fade(self, voice: Voice, sample: int, n: int) -> None:
-        self._forget(voice.weight)
-        self._glide(voice.weight, sample, 0.0, n)
+                self._glide(voice.weight, sample, 0.0, int(args["n"]))
 
     def _faded(self, voice: Voice, sample: int) -> bool:
         return voice.weight[glides.TO] == 0.0 and glides.is_settled(voice.weight, sample)
@@ -201,8 +197,9 @@ class BeamState:
         if self._frozen_at is not None:
             return
         self._frozen_at = sample
-        rows = (self.level, self.depth, *self.law, *(v.weight for v in self.voices))
-        for row in rows:
+        swap = round(SWAP_S * self.rate_hz)  # sounds that change places are let past each other
+        fades = (v.weight for v in self.voices if v.weight[glides.N] > swap)
+        for row in (self.level, self.depth, *self.law, *fades):
             if not glides.is_settled(row, sample):
                 self._frozen.append((row, tuple(row)))
                 self._glide(row, sample, glides.scalar_at(row, sample), 0, self._carried(row))

@@ -7,7 +7,7 @@ Records that change sound (`SOUNDING`), each for one beam unless said, with thei
 
     play    sound, loop                 start a sound from its beginning
     stop    n                           fade the programme out over n samples
-    level   power, n                    square of the beam's gain, raised cosine over n samples
+    level   power, n                    square of the beam's gain; the gain goes by a raised cosine
     depth   depth, n                    modulation depth
     law     law, n                      cross-fade to another law
     aim     point_m | direction, n      travel to a point / a direction, panel axes (right, out, up)

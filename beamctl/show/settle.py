@@ -82,8 +82,8 @@ class _Beam:
         if act.fall_s is not None:
             self.ends_s = None
         elif act.sound is not None:
-            length_s = show.sounds[act.sound].seconds + END_PAD_S
-            self.ends_s = None if act.loop else act.at_s + length_s
+            end_s = act.at_s + show.sounds[act.sound].seconds + END_PAD_S
+            self.ends_s = None if act.loop else end_s
 
 
 def state_after(show: Show, ref: str) -> dict[str, Settled]:
@@ -92,7 +92,7 @@ def state_after(show: Show, ref: str) -> dict[str, Settled]:
     KeyError when the sheet has no such cue.
     """
     last = show.sheet.position(ref) if ref else -1
-    beams = _fresh(show)
+    beams = {name: _Beam() for name in show.sheet.beam}
     for cue in show.sheet.cue[: last + 1]:
         for act in _in_time(cue):
             beams[act.beam].take(act, show)
@@ -105,7 +105,7 @@ def acts_of(show: Show) -> Iterator[Moment]:
 
     Before its first act a cue finds the state after the one that stands before it in the sheet.
     """
-    beams = _fresh(show)
+    beams = {name: _Beam() for name in show.sheet.beam}
     for cue in show.sheet.cue:
         for at_s, acts in groupby(_in_time(cue), key=lambda act: act.at_s):
             _pass(beams, at_s)
@@ -114,10 +114,6 @@ def acts_of(show: Show) -> Iterator[Moment]:
             leaving = {n: tuple(s for _, s in b.left) for n, b in beams.items() if b.left}
             yield Moment(cue.ref, at_s, {n: b.now for n, b in beams.items()}, leaving)
         _pass(beams, inf)
-
-
-def _fresh(show: Show) -> dict[str, _Beam]:
-    return {name: _Beam() for name in show.sheet.beam}
 
 
 def _in_time(cue: Cue) -> list[Act]:
@@ -136,8 +132,7 @@ def _after(state: Settled, act: Act, show: Show) -> Settled:
     if act.reach is not None:
         state = replace(state, reach=act.reach)
     if act.aims:
-        panel = show.rig.panel[show.panel_of(act.beam)]
-        target = target_of(act, show.house, panel)
+        target = target_of(act, show.house, show.rig.panel[show.panel_of(act.beam)])
         if target.point_m is None and state.reach == "aim":
             state = replace(state, reach=_distance(state.target))
         state = replace(state, target=target)

@@ -93,7 +93,7 @@ def interpolation_fir() -> NDArray[np.float64]:
     inner, outer, skirt = 1.0 / 24.0, 1.0 / 12.0, 1.1 / 12.0
     edges = (0.0, inner, inner + 1e-5, outer, 0.25 - skirt, 0.25 + skirt, 0.5 - skirt, 0.5)
     taps = np.zeros(INTERPOLATION_TAPS)
-    taps[2:79] = remez(77, edges, (1.0, 1.0, 0.0, 0.0), weight=(10.0, 1.0, 5.0, 5.0), fs=1.0)
+    taps[2:79] = remez(77, edges, (1.0, 1.0, 0.0, 0.0), weight=(10.0, 1.0, 5.0, 50.0), fs=1.0)
     for k in range(4):
         taps[k::4] /= taps[k::4].sum()
     return taps

@@ -98,7 +98,7 @@ def test_a_quadrature_pair_leaves_the_fourth_power(depth):
     assert distortion(tones) == pytest.approx(np.sqrt(2.0) * depth**3 / 4.0, abs=1e-3)
 
 
-@pytest.mark.parametrize("law, part", [("dsb", 2.0), ("ssb", 2.0), ("root", 1.0), ("mam", 1.0)])
+@pytest.mark.parametrize(("law", "part"), [("dsb", 2.0), ("ssb", 2.0), ("root", 1.0), ("mam", 1.0)])
 def test_the_fundamental_of_each_law(law, part):
     """2 m for both sidebands and for one; m, 6.02 dB less, for the root and the pair."""
     at_rest = 0.5 * 0.5  # rest envelope times the gain of `render`
@@ -118,11 +118,10 @@ def test_without_its_carrier_a_tone_comes_back_an_octave_up():
 
 def test_a_decibel_more_is_two_decibels_more():
     """The audible sound goes with the square of the ultrasound."""
-    louder = [
-        audible(lines_of(render(as_programme(tone(96, {1: 1.0})), "dsb", 0.7, WHOLE, power=p), TONE_HZ))
-        for p in (0.1, 0.1 * 10.0**0.1)
-    ]
-    assert db(louder[1][1] / louder[0][1]) == pytest.approx(2.0, abs=1e-3)
+    programme = as_programme(tone(96, {1: 1.0}))
+    feeds = [render(programme, "dsb", 0.7, WHOLE, power=p) for p in (0.1, 0.1 * 10.0**0.1)]
+    before, after = (audible(lines_of(feed, TONE_HZ))[1] for feed in feeds)
+    assert db(after / before) == pytest.approx(2.0, abs=1e-3)
 
 
 def test_twelve_decibels_an_octave():
@@ -145,10 +144,12 @@ SIDEBANDS = {
     ("root", 3): (-30.881, -38.327, -48.258, -58.754),
     ("root", 4): (-35.987, -46.638, -60.180, -74.300),
 }
-ROWS = [(*key, m, level) for key, row in SIDEBANDS.items() for m, level in zip(DEPTHS, row, strict=True)]
+ROWS = [
+    (*key, m, level) for key, row in SIDEBANDS.items() for m, level in zip(DEPTHS, row, strict=True)
+]
 
 
-@pytest.mark.parametrize("law, n, depth, level_db", ROWS)
+@pytest.mark.parametrize(("law", "n", "depth", "level_db"), ROWS)
 def test_sidebands(law, n, depth, level_db):
     """Pointwise to the table's last digit; rendered, where the air would see it, to 0.05 dB."""
     for lines, within_db in (
@@ -181,7 +182,9 @@ def test_a_root_needs_its_band(passed):
     assert 100.0 * distortion(audible(lines)) == pytest.approx(PASSED[passed], abs=0.006)
 
 
-@pytest.mark.parametrize("tone_hz, passed", [(3_900.0, 4), (5_200.0, 3), (7_800.0, 2), (15_600.0, 1)])
+@pytest.mark.parametrize(
+    "tone_hz, passed", [(3_900.0, 4), (5_200.0, 3), (7_800.0, 2), (15_600.0, 1)]
+)
 def test_a_rendered_root_has_the_distortion_of_its_band(tone_hz, passed):
     """±16 kHz pass, so a high tone keeps few sidebands, and exactly those."""
     lines = rendered_lines("root", 0.7, tone_hz)
@@ -191,8 +194,10 @@ def test_a_rendered_root_has_the_distortion_of_its_band(tone_hz, passed):
 
 
 def test_a_tone_stands_either_side_of_its_carrier():
-    """3 kHz on 100 kHz leaves 97, 100 and 103 kHz (common practice): pointwise, by arithmetic;
-    on 40 kHz, rendered, 37, 40 and 43 kHz."""
+    """3 kHz on 100 kHz leaves 97 and 103 kHz beside it (common practice), pointwise.
+
+    A panel's carrier goes up to 80 kHz: rendered, 3 kHz on 40 kHz leaves 37 and 43.
+    """
     rate_hz, count = 400_000, 4_000
     t = np.arange(count) / rate_hz
     e = pointwise("dsb", 0.8, np.exp(2j * np.pi * 3e3 * t))
@@ -220,13 +225,13 @@ TWO_TONES = {
 
 @pytest.mark.parametrize("law", TWO_TONES)
 def test_two_tones_pointwise(law):
-    """A root at full depth touches zero, so only the pointwise law, its every line kept, is clean."""
+    """Two tones meet a root's zero at full depth, where its lines never end: a hair less."""
     depth = 1.0 if law != "root" else 0.999
     lines = pointwise_lines(law, depth, {2: 0.5, 3: 0.5}, POINTS // 2 - 1)
     check_lines(audible(lines), TWO_TONES[law], 0.001, -60.0)
 
 
-@pytest.mark.parametrize("law, depth", [("dsb", 1.0), ("ssb", 1.0), ("root", 0.7)])
+@pytest.mark.parametrize(("law", "depth"), [("dsb", 1.0), ("ssb", 1.0), ("root", 0.7)])
 def test_two_tones_rendered(law, depth):
     """As above; the root at 0.35 each, where ±16 kHz hold what it needs."""
     programme = as_programme(tone(192, {2: 0.5, 3: 0.5}))
@@ -278,14 +283,21 @@ def behind_a_cell(law: str, tone_hz: float, q_known: float) -> np.ndarray:
     return audible(lines * resonance(40e3 + tone_hz * offsets, 40e3, 20.0))
 
 
-@pytest.mark.parametrize("tone_hz", [500.0, 1_000.0, 2_000.0])
-def test_the_equaliser_gives_the_root_its_sidebands_back(tone_hz):
-    """A cell that lags and sags its sidebands spoils what should square to 1 + m x."""
-    with_it = distortion(behind_a_cell("root", tone_hz, 20.0))
-    without = distortion(behind_a_cell("root", tone_hz, 0.01))
-    said = f"root, {tone_hz:g} Hz: THD {100 * with_it:.3f} % equalised, {100 * without:.2f} % not"
+@pytest.mark.parametrize(
+    ("tone_hz", "most", "least"), [(500.0, 0.05, 6.0), (1_000.0, 1.0, 12.0), (2_000.0, 6.0, 16.0)]
+)
+def test_the_equaliser_gives_the_root_its_sidebands_back(tone_hz, most, least):
+    """A cell that lags and sags its sidebands spoils what should square to 1 + m x.
+
+    The equaliser lifts by 12 dB at most, which a cell of Q = 20 asks for 3.9 kHz off its resonance:
+    the higher the tone, the fewer of the root's sidebands come back whole. Percent, at depth 0.7.
+    """
+    with_it = 100.0 * distortion(behind_a_cell("root", tone_hz, 20.0))
+    without = 100.0 * distortion(behind_a_cell("root", tone_hz, 0.01))
+    said = f"root, {tone_hz:g} Hz: THD {with_it:.3f} % equalised, {without:.2f} % not"
     print(said)
-    assert with_it < 0.0 and without > 0.0, said
+    assert with_it <= most, said
+    assert without >= least, said
 
 
 @pytest.mark.parametrize("tone_hz", [500.0, 1_000.0, 2_000.0])
@@ -297,4 +309,5 @@ def test_the_equaliser_gives_the_single_sideband_its_level_back(tone_hz):
     thd = [100.0 * distortion(tones) for tones in (with_it, without)]
     said = f"ssb, {tone_hz:g} Hz: {gains} dB, THD {thd} %, equalised and not"
     print(said)
-    assert abs(gains[0]) < 0.05, said
+    assert abs(gains[0]) < 0.05 and gains[1] < -0.9, said
+    assert max(thd) <= 0.1, said

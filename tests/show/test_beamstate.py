@@ -218,6 +218,15 @@ def test_freeze_holds_every_glide_and_thaw_ends_on_every_goal(at: int, wait: int
     assert everything(state, at + wait + left) == pytest.approx(goals, abs=1e-12)
 
 
+def test_a_level_thawed_just_before_its_end_still_takes_20_ms() -> None:
+    state = beam(0.25)
+    tell(state, 0, "level", power=1.0, n=SECOND)
+    tell(state, SECOND - 1000, "freeze")
+    tell(state, 2 * SECOND, "thaw")
+    assert state.power_at(2 * SECOND + SHORTEST_N - 1) < 1.0
+    assert state.power_at(2 * SECOND + SHORTEST_N) == 1.0
+
+
 def test_a_freeze_of_a_beam_at_rest_changes_nothing() -> None:
     state = beam()
     before = everything(state, 0)
@@ -260,6 +269,15 @@ def test_a_fall_that_is_held_keeps_its_sound_until_it_goes_on() -> None:
     tell(state, 9 * SECOND, "thaw")
     assert state.silent(10 * SECOND)
     assert weights(state, 10 * SECOND) == {"one": 0.0}
+
+
+def test_a_hold_lets_sounds_that_change_places_past_each_other() -> None:
+    state = beam()
+    tell(state, 0, "play", sound="two", loop=True)
+    tell(state, SWAP_N // 2, "freeze")
+    assert weights(state, SWAP_N) == {"one": 0.0, "two": 1.0}
+    tell(state, SECOND, "thaw")
+    assert weights(state, 2 * SECOND) == {"one": 0.0, "two": 1.0}
 
 
 def test_rows_may_be_views_into_larger_arrays() -> None:

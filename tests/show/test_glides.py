@@ -155,6 +155,11 @@ def test_an_arc_travel_stays_on_the_great_circle(
     whole = math.atan2(float(np.linalg.norm(normal)), float(np.dot(start, goal)))
     assert travelled[-1] == pytest.approx(whole, abs=1e-7)
     assert all(b >= a - 1e-7 for a, b in pairwise(travelled))
+    ease = EASE_S * RATE_HZ / n  # between the eases, at constant speed
+    for share in (ease, 0.3, 0.5, 0.8):
+        unit = np.array(state.direction_at(1 + share * n)[:3])  # type: ignore[arg-type]
+        way = math.atan2(float(np.linalg.norm(np.cross(start, unit))), float(np.dot(start, unit)))
+        assert way == pytest.approx(whole * (share - 0.5 * ease) / (1.0 - ease), abs=1e-7)
 
 
 @given(

@@ -201,8 +201,10 @@ def test_one_ready_is_good_for_one_confirm() -> None:
     p = player(cue("1"), armed=False)
     p.handle(events.Ready(), 0)
     p.handle(events.Confirm(), 1)
-    p.handle(events.Hush(), 2)
-    assert reason(p.handle(events.Confirm(), 3)) == "not-armed"
+    p.sink("sink-lost", 2)
+    p.sink("sink-open", 3)
+    assert reason(p.handle(events.Confirm(), 4)) == "not-armed"
+    assert p.output == "SHUT"
 
 
 def test_hush_takes_a_ready_back() -> None:

@@ -31,6 +31,22 @@ def test_a_follow_on_fires_at_its_very_sample() -> None:
     assert p.standby == "3"
 
 
+def test_a_follow_on_finds_a_cue_done_however_late_it_is_looked_at() -> None:
+    p = player(cue("1", then="2", then_at_s=1.0), cue("2", loop(), {"beam": "a", "fall_s": 0.1}))
+    p.handle(events.Go(ref="2"), 0)
+    p.handle(events.Go(ref="1"), 10)
+    later = p.advance(LATER)
+    assert [r.what for r in later if r.cue == "2"] == [
+        "done",
+        "go",
+        "play",
+        "level",
+        "level",
+        "stop",
+        "done",
+    ]
+
+
 def test_firing_by_hand_cancels_the_pending_follow_on() -> None:
     p = chain()
     p.handle(events.Go(), 0)
@@ -162,6 +178,16 @@ def test_a_loop_keeps_its_cue_running_until_another_takes_the_beam() -> None:
     assert (p.state("1"), p.state("2")) == ("done", "running")
 
 
+def test_a_cue_whose_sound_another_ends_is_done_when_it_has_fallen() -> None:
+    p = player(cue("1", loop()), cue("2", {"beam": "a", "fall_s": 2.0}))
+    p.handle(events.Go(), 0)
+    p.handle(events.Go(), at(1.0))
+    assert {(r.sample, r.what, r.cue) for r in p.advance(LATER)} == {
+        (at(3.0), "done", "1"),
+        (at(3.0), "done", "2"),
+    }
+
+
 def test_a_silent_beam_takes_its_aim_at_once_and_a_sounding_one_travels() -> None:
     p = player(
         cue("1", loop(point_m=[0.0, 5.0, 0.0], over_s=3.0)),
@@ -223,6 +249,18 @@ def test_a_travel_is_slowed_to_the_phase_rate() -> None:
     swing_rad = p.plans["a"].swing[0] * 2.0 * 3.141592653589793 / 180.0
     assert aim.args["n"] / RATE_HZ >= swing_rad / PHASE_RATE
     assert aim.args["n"] < at(0.15)
+
+
+def test_a_wide_travel_with_time_enough_does_not_dip() -> None:
+    p = player(
+        cue("1", loop(azimuth_deg=-40.0)),
+        cue("2", {"beam": "a", "azimuth_deg": 40.0, "over_s": 3.0}),
+    )
+    p.handle(events.Go(), 0)
+    assert [(r.what, r.args.get("n")) for r in p.handle(events.Go(), at(1.0))] == [
+        ("go", None),
+        ("aim", at(3.0)),
+    ]
 
 
 def test_a_fall_during_a_dip_leaves_the_beam_silent() -> None:

@@ -1,4 +1,4 @@
-"""A show played by chance: GO, hush, re-aim and restore through the player, samples kept a while."""
+"""A show played by chance: GO, hush, re-aim and restore through the player."""
 
 from __future__ import annotations
 
@@ -47,11 +47,11 @@ class Tape:
 
     def take(self, begin: int, end: int) -> np.ndarray:
         """(F, end - begin) float64."""
-        first = self._blocks[0][0]
-        assert first <= begin
-        kept = [b for s, b in self._blocks if s < end and s + len(b) > begin]
-        first = next(s for s, b in self._blocks if s + len(b) > begin)
-        return np.concatenate(kept)[begin - first : end - first].T.astype(np.float64)
+        assert self._blocks[0][0] <= begin
+        kept = [(s, b) for s, b in self._blocks if s < end and s + len(b) > begin]
+        first = kept[0][0]
+        whole = np.concatenate([block for _, block in kept])
+        return whole[begin - first : end - first].T.astype(np.float64)
 
 
 class Evening:

@@ -1,11 +1,11 @@
-"""What rendered feeds do at points in the room: the carrier's envelope there, and what the air adds.
+"""What rendered feeds do at points in the room: the carrier's envelope, and what the air adds.
 
 Written from the formulas alone, in double precision. Everything is done on spectra: a filter is the
 exact response of a finite symmetrical FIR, so the circular transform spoils no more than `MARGIN_S`
 at each end of the stretch that was handed in.
 
     E at a point   feeds' spectra around the carrier, band-limited to ±20 kHz (nothing of |E|² below
-                   20 kHz is lost that an ear could hear: the renderer holds envelopes to ±17.6 kHz),
+                   20 kHz is lost that an ear could hear: the renderer's stay in ±17.6 kHz),
                    each cell's times exp(-j 2π f r/c) / r at its own frequency f, so that carrier
                    phase and envelope delay are both exact, summed
     p ~ d²/dt²|E|² Berktay, J. Sound Vib. 2 (1965) 435; |E|² is low-passed first (pass 20 kHz, stop
@@ -46,40 +46,49 @@ def response(taps: np.ndarray, f_hz: np.ndarray, rate_hz: float) -> np.ndarray:
     return np.real(found * np.exp(1j * np.pi * f_hz / rate_hz * (len(taps) - 1)))
 
 
-def heard_below(feeds: np.ndarray, rate_hz: float, pass_hz: float, stop_hz: float) -> np.ndarray:
-    """(F, n) what is left of feeds (F, samples) after a low-pass, -120 dB, at half the rate."""
+class Spectra(NamedTuple):
+    """Feeds (F, `count`) as spectra (F, size / 2 + 1), zeros put behind them; size in fours."""
+
+    bins: np.ndarray
+    count: int
+    size: int
+
+
+def spectra_of(feeds: np.ndarray) -> Spectra:
     size = fft.next_fast_len((feeds.shape[1] + 3) // 4) * 4
-    f_hz = np.arange(size // 4 + 1) * rate_hz / size
+    return Spectra(fft.rfft(feeds, size, axis=1), feeds.shape[1], size)
+
+
+def heard_below(feeds: Spectra, rate_hz: float, pass_hz: float, stop_hz: float) -> np.ndarray:
+    """(F, n) what is left of feeds after a low-pass, -120 dB, at half the rate."""
+    kept = feeds.size // 4 + 1
+    f_hz = np.arange(kept) * rate_hz / feeds.size
     shape = response(lowpass(pass_hz, stop_hz, 120.0, rate_hz), f_hz, rate_hz)
-    spectra = fft.rfft(feeds, size, axis=1)[:, : size // 4 + 1] * shape
-    return 0.5 * fft.irfft(spectra, size // 2, axis=1)[:, : feeds.shape[1] // 2]
+    low = fft.irfft(feeds.bins[:, :kept] * shape, feeds.size // 2, axis=1)
+    return 0.5 * low[:, : feeds.count // 2]
 
 
 def hear(
-    feeds: np.ndarray,
+    feeds: Spectra,
     rate_hz: float,
     carrier_hz: float,
     at_m: np.ndarray,
     points_m: np.ndarray,
     speed_m_s: float,
 ) -> Heard:
-    """What feeds (F, samples), one cell each at `at_m` (F, 3), do at points (P, 3)."""
-    count = feeds.shape[1]
-    size = fft.next_fast_len((count + 3) // 4) * 4
-    step_hz = rate_hz / size
+    """What feeds, one cell each at `at_m` (F, 3), do at points (P, 3)."""
+    step_hz = rate_hz / feeds.size
     middle = round(carrier_hz / step_hz)
     half = int(24_000.0 / step_hz)
     offsets = np.arange(-half, half + 1)
     shape = response(lowpass(20e3, 24e3, 100.0, rate_hz), np.abs(offsets) * step_hz, rate_hz)
-    around = np.ascontiguousarray(
-        fft.rfft(feeds, size, axis=1)[:, middle - half : middle + half + 1] * shape
-    )
+    around = np.ascontiguousarray(feeds.bins[:, middle - half : middle + half + 1] * shape)
     r = np.linalg.norm(points_m[:, None, :] - at_m, axis=2)
     late = (r - r.mean(axis=1, keepdims=True)) / speed_m_s
-    spectrum = np.zeros((len(points_m), size // 2), np.complex128)
+    spectrum = np.zeros((len(points_m), feeds.size // 2), np.complex128)
     spectrum[:, offsets] = _sum(around, late, 1.0 / r, (middle - half) * step_hz, step_hz)
     envelope = fft.ifft(spectrum, axis=1)
-    return _bent(np.abs(envelope), 0.5 * rate_hz, count // 2)
+    return _bent(np.abs(envelope), 0.5 * rate_hz, feeds.count // 2)
 
 
 def _bent(level: np.ndarray, rate_hz: float, count: int) -> Heard:

@@ -9,7 +9,6 @@ import numpy as np
 from beamctl.acoustics import cells as maps
 from beamctl.acoustics.cells import CellMap
 
-
 PAIR_M = 0.0078  # under a wavelength in every air and for every carrier drawn here
 
 

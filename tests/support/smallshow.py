@@ -140,7 +140,7 @@ def write_show(folder: Path) -> Path:
 
 
 def write_steady_show(folder: Path, tone_hz: int) -> Path:
-    """One panel of 64 feeds, and one cue that brings a steady tone up over half a second."""
+    """One panel of 64 feeds, and one cue: eight seconds of a tone that rise over half a second."""
     (folder / "sounds").mkdir(parents=True)
     (folder / "sheet.toml").write_text("""format = 1
 title = "Steady"
@@ -152,7 +152,6 @@ title = "a tone"
 [[cue.act]]
 beam = "tone"
 sound = "steady.wav"
-loop = true
 seat = "A3"
 law = "dsb"
 depth = 0.7
@@ -169,7 +168,7 @@ grid = {{ columns = 8, rows = 8, pitch_mm = 10.0 }}
 {CELL}""")
     (folder / "house.toml").write_text(HOUSE)
     (folder / "guard.toml").write_text(GUARD)
-    at_s = np.arange(48_000) / 48_000
+    at_s = np.arange(8 * 48_000) / 48_000
     soundfile.write(folder / "sounds/steady.wav", 0.5 * np.sin(2 * np.pi * tone_hz * at_s), 48_000)
     return folder
 

@@ -117,11 +117,15 @@ def keep(show: Path, journal: Path) -> None:
 
 def test_a_journal_cut_anywhere_keeps_its_whole_lines(show: Path, tmp_path: Path) -> None:
     journal, cut = tmp_path / "kept.jsonl", tmp_path / "cut.jsonl"
+    sheet = show / "sheet.toml"  # a letter of two bytes may be cut too
+    sheet.write_text(sheet.read_text(encoding="utf-8").replace("burst", "möwe"), encoding="utf-8")
+    (show / "sounds/burst.wav").rename(show / "sounds/möwe.wav")
     keep(show, journal)
     data = journal.read_bytes()
     header, records = read_journal(journal)
     whole = list(records)
     assert len(whole) > 10
+    assert "möwe".encode() in data.split(b"\n", 1)[1]
     for size in range(len(data) + 1):
         cut.write_bytes(data[:size])
         lines = data[:size].count(b"\n")

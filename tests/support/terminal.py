@@ -1,0 +1,92 @@
+"""A terminal for the desk: a tmux server of its own with one shell in it."""
+
+from __future__ import annotations
+
+import itertools
+import os
+import shlex
+import subprocess
+import time
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+
+from support.running import COMMAND, need, wait_for
+
+_numbers = itertools.count(1)
+MODES = (
+    "#{cursor_flag} #{alternate_on} #{keypad_flag} #{insert_flag} #{wrap_flag} #{mouse_any_flag}"
+)
+GUARD_S = 0.75  # Enter sooner than 0.7 s after Enter is a held key
+
+
+class Terminal:
+    """One pane, 120 by 40, that runs a shell."""
+
+    def __init__(self, server: str, folder: Path) -> None:
+        self._server = server
+        self._folder = folder
+        self._entered_s = 0.0
+        self._runs = itertools.count(1)
+
+    def run(self, *command: str | Path, **env: str) -> Path:
+        """Type a command to the shell; its exit code will be in the file that is returned."""
+        code = self._folder / f"code-{next(self._runs)}"
+        named = [f"{name}={value}" for name, value in env.items()]
+        line = shlex.join(["env", *named, *map(str, command)])
+        self.type(f"{line}; echo $? > {shlex.quote(str(code))}")
+        self.key("Enter")
+        return code
+
+    def desk(self, show: Path, journal: Path, **env: str) -> Path:
+        """Start a desk on the null sink; wait until it shows an output that is SHUT."""
+        code = self.run(*COMMAND, "desk", show, "--journal", journal, **env)
+        wait_for(lambda: "SHUT" in self.screen() or code.exists(), "the desk to show SHUT", 180.0)
+        assert not code.exists(), self.screen()
+        return code
+
+    def modes(self) -> str:
+        """What programs may change of a terminal: its line discipline, and what tmux keeps."""
+        file = self._folder / "stty"
+        wait_for(self.run("sh", "-c", f"stty -a > {shlex.quote(str(file))}").exists, "stty")
+        return f"{self._tmux('display', '-p', MODES)}{file.read_text()}"
+
+    def screen(self) -> str:
+        """The text on the screen."""
+        return self._tmux("capture-pane", "-p")
+
+    def type(self, text: str) -> None:
+        """Send a text as it is."""
+        self._tmux("send-keys", "-l", text)
+
+    def key(self, name: str) -> None:
+        """Press one key."""
+        self._tmux("send-keys", name)
+
+    def enter(self) -> None:
+        """Press Enter as one who has let go of it before."""
+        time.sleep(max(0.0, self._entered_s + GUARD_S - time.monotonic()))
+        self.key("Enter")
+        self._entered_s = time.monotonic()
+
+    def _tmux(self, *arguments: str) -> str:
+        return subprocess.run(
+            ["tmux", "-L", self._server, *arguments],
+            check=True,
+            capture_output=True,
+            text=True,
+            timeout=20.0,
+        ).stdout
+
+
+@contextmanager
+def terminal(folder: Path) -> Iterator[Terminal]:
+    """A terminal whose server is gone when the block is left."""
+    need("tmux")
+    server = f"beamctl-test-{os.getpid()}-{next(_numbers)}"
+    start = ["new-session", "-d", "-x", "120", "-y", "40", "sh"]
+    subprocess.run(["tmux", "-L", server, "-f", os.devnull, *start], check=True, timeout=20.0)
+    try:
+        yield Terminal(server, folder)
+    finally:
+        subprocess.run(["tmux", "-L", server, "kill-server"], check=False, timeout=20.0)
