@@ -18,6 +18,7 @@ from beamctl import __version__
 from beamctl.caution import CAUTION_LINE
 from beamctl.errors import BeamctlError, DeviceError, ShowError
 from beamctl.files.reader import load_show, read_show
+from beamctl.show.records import Record
 
 HOST_STARTS_S = 20.0
 SHOW = click.argument("show", type=click.Path(path_type=Path))
@@ -186,8 +187,7 @@ def render(
     writer.close()
     if journal is not None:
         kept = Journal(journal, found, f"file:{output}")
-        kept.write(records)
-        kept.write([offline.left(samples, digest)])
+        kept.write([Record(0, "stream"), *records, offline.left(samples, digest)])
         kept.close()
     seconds = samples / rate_hz
     spent = time.monotonic() - started
@@ -209,24 +209,25 @@ def replay(log: Path, output: Path | None) -> None:
     from beamctl.host import offline
     from beamctl.sinks.rf64 import Rf64Writer
 
-    found, records = offline.recall(log)
-    last = records[-1]
+    found, streams = offline.recall(log)
     writer = Rf64Writer(output, found.rig.rate_hz, found.channels) if output else None
     write = writer.write if writer else _discard
     try:
         with _bar(True) as progress:
-            digest = offline.render(found, records, last.sample, write, progress)
+            outcomes = offline.replay(found, streams, write, progress)
     except BaseException:
         if writer:
             writer.abandon()
         raise
     if writer:
         writer.close()
-    same = digest == last.args["sha256"]
-    click.echo(
-        f"{log.name}: {'the same samples' if same else 'DIFFERENT SAMPLES'}, sha256 {digest}"
-    )
-    sys.exit(0 if same else 1)
+    said = {True: "the same samples", False: "DIFFERENT SAMPLES", None: "cut off, not compared"}
+    for outcome in outcomes:
+        click.echo(
+            f"{log.name}: from sample {outcome.start}, {outcome.samples} samples: "
+            f"{said[outcome.same]}, sha256 {outcome.digest}"
+        )
+    sys.exit(1 if any(outcome.same is False for outcome in outcomes) else 0)
 
 
 @main.command()

@@ -2,7 +2,8 @@
 
     BeamctlError
     ├── ShowError      the files: what is written in the show folder
-    ├── DeviceError    the machine: sinks, rates, channels, memory, a lost process
+    ├── DeviceError    the machine: sinks, memory, a lost process
+    │   └── ContractError  a sink that does not offer the rate or the channels of the rig
     └── PeerError      the network: a sender; counted and shown, never raised past osc/
 
 Each carries what is wrong and, on its own line, what to do about it.
@@ -35,6 +36,17 @@ class DeviceError(BeamctlError):
     """The machine cannot do what the rig needs."""
 
     exit_code = 4
+
+    def __init__(self, what: str, do: str = "", exit_code: int | None = None) -> None:
+        super().__init__(what, do)
+        if exit_code is not None:
+            self.exit_code = exit_code
+
+
+class ContractError(DeviceError):
+    """A sink is there, but does not offer the rate or the channels that the rig needs."""
+
+    exit_code = 6
 
 
 class PeerError(BeamctlError):

@@ -65,11 +65,16 @@ class EngineView:
     quantum: int
     ring_ms: float
     rendered: int  # samples handed to the sink since it opened
-    late: int  # times the sink ran dry
+    late: int  # times the sink found the ring dry
     load_pct: float  # share of the time that rendering takes
     compile_s: float
     busy: str = ""  # what it is getting ready, "sound bell.flac, 3 of 7"; "" when it is ready
     route: str = ""  # how samples reach the device
+    priority: str = ""  # of the thread that renders, as the system granted it
+    fill_ms: float = 0.0  # what the ring holds now
+    longest_ms: float = 0.0  # longest time between two callbacks
+    callbacks: int = 0
+    drift_ppm: float | None = None  # the device's clock against the system's; None: not known yet
 
 
 @dataclass(frozen=True, slots=True)

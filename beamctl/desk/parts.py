@@ -101,23 +101,29 @@ def _drive(panel: PanelView, cells: int) -> Row:
 def sink_row(view: View, width: int) -> Row:
     """How the engine and its sink are doing."""
     engine = view.snapshot.engine
-    head = (
-        f"sink {engine.sink}  {engine.rate_hz / 1000:g} kHz  {engine.feeds} feeds  "
-        f"quantum {engine.quantum}  ring {engine.ring_ms:g} ms  "
-    )
     if engine.busy:
         return fit(
             (Span(f"sink {engine.sink}  "), Span(f"not ready: {engine.busy}", "attention")), width
         )
     late: Role = "attention" if engine.late else "dim"
     load: Role = "attention" if engine.load_pct >= BUSY_PCT else "dim"
-    row = (
-        Span(head),
+    route: Role = "attention" if engine.route == "blocking writes" else "dim"
+    row = [
+        Span(f"{engine.sink}  {engine.rate_hz / 1000:g} kHz  {engine.feeds} feeds  "),
         Span(f"late {engine.late}", late),
         Span("  "),
         Span(f"load {engine.load_pct:.0f} %", load),
-    )
-    return fit(row, width)
+        Span(f"  ring {engine.ring_ms:.0f} ms, fill {engine.fill_ms:.0f}"),
+        Span(f"  gap {engine.longest_ms:.0f} ms"),
+    ]
+    if engine.drift_ppm is not None:
+        row.append(Span(f"  drift {engine.drift_ppm:+.1f} ppm"))
+    row += [
+        Span(f"  {engine.priority}  quantum {engine.quantum}  "),
+        Span(engine.route, route),
+        Span(f"  {engine.callbacks} calls  compiled in {engine.compile_s:.1f} s"),
+    ]
+    return fit(tuple(row), width)
 
 
 def notice_row(view: View | None, width: int, gone: bool = False) -> Row:

@@ -7,7 +7,7 @@ the ring ran dry) comes here as records, each taken in exactly at its frame.
 from __future__ import annotations
 
 import heapq
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,7 +16,7 @@ from beamctl.engine import layout as at
 from beamctl.engine.outlet import Outlet, Wire
 from beamctl.engine.renderer import Renderer
 from beamctl.show.beamstate import MIN_GLIDE_S
-from beamctl.show.records import Record
+from beamctl.show.records import FINAL, Record
 from beamctl.show.show import Show
 
 STEP = 1024
@@ -41,6 +41,7 @@ class Chain:
 
     ahead  frames that the renderer runs in front, so that the final stage sees peaks coming; with 0
            records may come at any frame that has not been rendered, and ceilings are not foreseen
+    tap    is given the first frame's number and every block that enters the ring
     """
 
     def __init__(
@@ -49,12 +50,16 @@ class Chain:
         sounds: Mapping[str, Mapping[str, NDArray[np.float32]]],
         start: int = 0,
         ahead: int = at.LOOKAHEAD + at.CHUNK,
+        tap: Callable[[int, NDArray[np.float32]], None] | None = None,
     ) -> None:
+        self._tap = tap
         self.renderer = Renderer(show, sounds, start)
         self.channels = show.channels
         self._ahead = ahead
         frames = 2 * STEP + ahead
-        self.outlet = Outlet.create(None, frames, show.channels, wires_of(show), ramp_n(show), start)
+        self.outlet = Outlet.create(
+            None, frames, show.channels, wires_of(show), ramp_n(show), start
+        )
         ratings = [wire.rating for wire in wires_of(show)]
         self.outlet.grant(FOREVER, ratings)
         self.outlet.flow()
@@ -69,7 +74,7 @@ class Chain:
 
     def put(self, record: Record) -> None:
         """Take a record for its frame; ValueError when that is past."""
-        if record.what not in ("gate", "dry", "grant"):
+        if record.what not in FINAL:
             self.renderer.put(record)
             return
         if record.sample < self.position:
@@ -102,5 +107,8 @@ class Chain:
 
     def _render_ahead(self, until: int) -> None:
         while (n := min(STEP, until - self.renderer.position)) > 0:
+            first = self.renderer.position
             self.renderer.render(self._block[:n])
+            if self._tap is not None:
+                self._tap(first, self._block[:n])
             self.outlet.push(self._block[:n])

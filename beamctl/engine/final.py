@@ -1,10 +1,10 @@
 """Compiled: the final stage, the last thing that touches a sample. Ring in, device out.
 
-No Python, no allocation, no lock, and no arithmetic shortcuts that assume a number is a number. For
-every block it decides once, at the block's first frame, whether the gate may be open; then, frame by
-frame: what is not finite becomes 0 and a latched fault; a panel whose samples would pass its ceiling
-is held by one smooth gain that sees the peaks coming in the ring; what passes it all the same is cut
-off, and that is a fault too.
+No Python, no allocation, no lock, and no arithmetic shortcuts that assume a number is a number.
+For every block it decides once, at the block's first frame, whether the gate may be open; then,
+frame by frame: what cannot be a sample becomes 0 and a latched fault; a panel whose samples would
+pass its ceiling is held by one smooth gain that sees the peaks coming in the ring; what passes it
+all the same is cut off, and that is a fault too.
 
 A closed gate stays closed until it is asked anew: neither a lease that comes back nor a device that
 flows again opens it. Only a ring that ran dry for a moment comes back by itself, by the ramp.
@@ -19,10 +19,12 @@ from numba.extending import intrinsic
 
 from beamctl.engine import layout as at
 from beamctl.engine.compiled import compiled
-from beamctl.show.glides import is_settled, scalar_at
+from beamctl.show.glides import is_settled, scalar_at, take_over
 
 MAGNITUDE = np.int32(0x7FFFFFFF)  # a float32's bits without its sign
-NOT_FINITE = np.int32(0x7F800000)  # the bits of infinity; above them nothing is a number
+BROKEN = np.int32(
+    0x41800000
+)  # the bits of 16: no programme is 24 dB over full scale, or not a number
 JUST_UNDER = 1.0 - 5e-7  # so that rounding to float32 never passes the limit
 RELEASE = 0.997  # of a held peak, per chunk: 6 dB in 77 ms at 192 kHz
 
@@ -112,10 +114,9 @@ def note_time(memory, now_ns):
 def _decide(memory, sample):
     """Open or close the gate at `sample`."""
     gate = memory[at.GATE]
-    hushed = memory[at.HUSH] != memory[at.SEEN_HUSH]
-    memory[at.SEEN_HUSH] = memory[at.HUSH]
-    asked = memory[at.OPEN_ASK] != memory[at.SEEN_OPEN]
-    memory[at.SEEN_OPEN] = memory[at.OPEN_ASK]
+    hush, ask = memory[at.HUSH], memory[at.OPEN_ASK]  # once: they may change at any time
+    hushed, asked = hush != memory[at.SEEN_HUSH], ask != memory[at.SEEN_OPEN]
+    memory[at.SEEN_HUSH], memory[at.SEEN_OPEN] = hush, ask
     leased = sample < memory[at.LEASE_UNTIL]
     if gate == 1 and (hushed or not leased):
         _ramp(memory, sample, memory[at.RAMP_N], 0.0)
@@ -127,35 +128,27 @@ def _decide(memory, sample):
 
 @compiled
 def _ramp(memory, sample, n, goal):
-    """Take the gate from wherever it is to `goal` over n frames, square of the gain, no step in slope.
+    """Take the gate from wherever it is to `goal` over n frames, at least RAMP_N, no step in slope.
 
-    The arithmetic is that of BeamState's level glides, so that a journal's gate records give the same
-    samples.
+    The arithmetic is that of BeamState's level glides, so that a journal's gate records give the
+    same samples.
     """
+    shortest = memory[at.RAMP_N]
     row = memory[at.GATE_ROW : at.GATE_ROW + 6].view(np.float64)
-    value = scalar_at(row, float(sample))
-    slope = scalar_at(row, float(sample + 1)) - value
-    over = float(memory[at.RAMP_N])
-    if abs(slope) < 1e-15:
-        slope = 0.0
-    if slope < 0.0:
-        over = min(over, 4.0 * value / -slope)
-    row[0], row[1], row[2], row[3], row[4] = float(sample), float(n), value, goal, slope
-    row[5] = over if slope != 0.0 else 0.0
+    take_over(row, float(sample), float(max(n, shortest)), goal, float(shortest))
     memory[at.GATE] = 1 if goal > 0.0 else 0
 
 
 @compiled
 def went_dry(memory, sample):
-    """The ring had too little: count it, and come back by the ramp when it flows again."""
+    """The ring had too little: count it, and come back by the ramp, if open, when it flows."""
     memory[at.EMPTY] += 1
     if memory[at.DRY] != sample + 1:  # once per drought
         memory[at.DRY] = sample + 1
         _log(memory, sample, at.WENT_DRY, memory[at.RAMP_N])
-    if memory[at.GATE] == 1:
-        row = memory[at.GATE_ROW : at.GATE_ROW + 6].view(np.float64)
-        row[0], row[1], row[2] = float(sample), float(memory[at.RAMP_N]), 0.0
-        row[3], row[4], row[5] = 1.0, 0.0, 0.0
+    row = memory[at.GATE_ROW : at.GATE_ROW + 6].view(np.float64)
+    row[0], row[1], row[2] = float(sample), float(memory[at.RAMP_N]), 0.0
+    row[3], row[4], row[5] = float(memory[at.GATE]), 0.0, 0.0
 
 
 @compiled
@@ -181,12 +174,20 @@ def _scan(memory, until):
             largest = np.int32(0)
             for i in range(at.CHUNK):
                 start = ((chunk * at.CHUNK + i) % frames) * channels + first
-                frame = _largest(bits, start, feeds)
-                # what is not finite is dealt with when it is sent, and is no peak
-                largest = max(largest, frame if frame < NOT_FINITE else np.int32(0))
+                largest = max(largest, _peak(bits, start, feeds))
             _demand(memory, panel, chunk, bits_float(largest))
         chunk += 1
     memory[at.SCANNED] = chunk
+
+
+@compiled
+def _peak(bits, start, count):
+    """As `_largest`, of what can be a sample: the rest is dealt with when it is sent."""
+    largest = np.int32(0)
+    for k in range(np.uint64(count)):
+        size = np.int32(bits[np.uint64(start) + k] & MAGNITUDE)
+        largest = max(largest, size if size < BROKEN else np.int32(0))
+    return largest
 
 
 @compiled
@@ -240,15 +241,14 @@ def _finish(memory, out, read, taken):
             chunk = sample // at.CHUNK
             before = _demand_of(memory, panel, chunk + at.SMOOTH - 1)
             after = _demand_of(memory, panel, chunk + at.SMOOTH)
-            if max(before, after) > 0.0:
-                sounded |= _finish_chunk(memory, out, panel, read, i, n, before, after, limit)
+            sounded |= _finish_chunk(memory, out, panel, read, i, n, before, after, limit)
             i += n
     return sounded
 
 
 @compiled
 def _finish_chunk(memory, out, panel, read, begin, n, before, after, limit):
-    """Frames begin … begin + n of a block, of one panel, inside one chunk; 1 when the gate let any out."""
+    """Frames begin … begin + n of a panel, inside one chunk; 1 when the gate let any out."""
     frames, channels = memory[at.FRAMES], memory[at.CHANNELS]
     first, feeds = memory[at.FIRSTS + panel], memory[at.FEEDS + panel]
     ring = memory[at.SAMPLES :].view(np.float32)
@@ -256,7 +256,6 @@ def _finish_chunk(memory, out, panel, read, begin, n, before, after, limit):
     still = is_settled(row, float(read + begin))
     gate = np.float32(max(0.0, scalar_at(row, float(read + begin))))
     held = max(before, after) > limit
-    limit = np.float32(limit)
     limit_bits = float_bits(limit)
     sounded = 0
     for i in range(begin, begin + n):
@@ -282,12 +281,14 @@ def _finish_chunk(memory, out, panel, read, begin, n, before, after, limit):
 
 @compiled
 def _limit(memory, panel):
-    """What no sample of a panel may pass: the lower of its ceiling and its rating."""
+    """What no sample of a panel may pass: the least of its ceiling, its rating and full scale."""
     ceiling = memory[at.CEILINGS + panel : at.CEILINGS + panel + 1].view(np.float64)[0]
     rating = memory[at.RATINGS + panel : at.RATINGS + panel + 1].view(np.float64)[0]
-    if not (ceiling >= 0.0):  # a ceiling that is not a number lets nothing out
-        ceiling = 0.0
-    return min(ceiling, rating)
+    if not (ceiling >= 0.0 and rating >= 0.0):  # what is not a number lets nothing out
+        return np.float32(0.0)
+    exact = min(ceiling, rating, 1.0)
+    limit = np.float32(exact)
+    return bits_float(float_bits(limit) - np.int32(1)) if limit > exact else limit
 
 
 @compiled
@@ -302,7 +303,7 @@ def _demand_of(memory, panel, chunk):
 
 @compiled
 def _send(ring, source, out, target, feeds, gain, limit, limit_bits):
-    """One frame of one panel; 0, or 1 + feed of a sample not finite, or -(1 + feed) of one cut off."""
+    """One frame of one panel; 0, or 1 + feed of what is no sample, -(1 + feed) of one cut off."""
     for f in range(np.uint64(feeds)):
         out[np.uint64(target) + f] = gain * ring[np.uint64(source) + f]
     if _largest(out.view(np.int32), target, feeds) <= limit_bits:
@@ -311,12 +312,12 @@ def _send(ring, source, out, target, feeds, gain, limit, limit_bits):
     for f in range(feeds):
         value = out[target + f]
         if not (abs(value) <= limit):
-            if np.isfinite(ring[source + f]):
+            if float_bits(abs(ring[source + f])) < BROKEN:
                 out[target + f] = limit if value > 0.0 else -limit
-                wrong = -(f + 1) if wrong <= 0 else wrong
+                wrong = wrong if wrong != 0 else -(f + 1)
             else:
                 out[target + f] = np.float32(0.0)
-                wrong = f + 1
+                wrong = wrong if wrong > 0 else f + 1
     return wrong
 
 

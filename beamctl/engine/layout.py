@@ -19,7 +19,7 @@ SEEN_OPEN, SEEN_HUSH, GATE, EVENTS = 30, 31, 32, 33
 FAULTS, FAULT_FEED, CLIPS, SOUNDED, SCANNED, DRY = 34, 35, 36, 37, 38, 39
 LAST_READ = 40  # READ at LAST_NS
 # set once
-FRAMES, CHANNELS, PANELS, RAMP_N, SIZE = 48, 49, 50, 51, 52
+FRAMES, CHANNELS, PANELS, RAMP_N, SIZE, START = 48, 49, 50, 51, 52, 53
 HEADER = 64
 
 # kinds of events that the final stage logs, with their sample

@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 
 from beamctl.engine import final
 from beamctl.engine import layout as at
+from beamctl.show.glides import scalar_at
 
 Block = NDArray[np.float32]
 
@@ -74,6 +75,7 @@ class Outlet:
         memory[at.FRAMES], memory[at.CHANNELS] = frames, channels
         memory[at.PANELS], memory[at.RAMP_N], memory[at.SIZE] = len(panels), ramp_n, size
         memory[at.WRITTEN], memory[at.READ], memory[at.SCANNED] = start, start, start // at.CHUNK
+        memory[at.START] = start
         for i, wire in enumerate(panels):
             memory[at.FIRSTS + i], memory[at.FEEDS + i] = wire.first, wire.feeds
             outlet._floats[at.RATINGS + i] = wire.rating
@@ -104,6 +106,11 @@ class Outlet:
         """The most frames asked for at once."""
         return self.count(at.BLOCK)
 
+    @property
+    def start(self) -> int:
+        """Number of the stream's first frame."""
+        return self.count(at.START)
+
     # -- the render thread ------------------------------------------------------------------------
 
     @property
@@ -132,7 +139,7 @@ class Outlet:
         """Do at the next frame what a ring that ran dry does to the gate."""
         final.went_dry(self.memory, self.count(at.READ))
 
-    # -- whoever grants and asks --------------------------------------------------------------------
+    # -- whoever grants and asks ------------------------------------------------------------------
 
     def grant(self, until: int, ceilings: Sequence[float] | None = None) -> None:
         """Let panels sound up to frame `until`, under their ceilings (re full scale)."""
@@ -168,8 +175,6 @@ class Outlet:
     @property
     def gate_gain(self) -> float:
         """Gain of the gate at the frame that is read next."""
-        from beamctl.show.glides import scalar_at
-
         row = self._floats[at.GATE_ROW : at.GATE_ROW + 6]
         return max(0.0, float(scalar_at(row, self.count(at.READ))))
 

@@ -257,12 +257,11 @@ def _shift(buffers):
 
 
 @compiled
-def interleave(block, first, out, gate, begin):
-    """block[i, first + f] = gate[i] × out[f, begin + i]: feeds of one panel into (n, channels)."""
+def interleave(block, first, out, begin):
+    """block[i, first + f] = out[f, begin + i]: feeds of one panel into (n, channels)."""
     for i in range(block.shape[0]):
-        gain = gate[i]
         for f in range(out.shape[0]):
-            block[i, first + f] = gain * out[f, begin + i]
+            block[i, first + f] = out[f, begin + i]
 
 
 @compiled

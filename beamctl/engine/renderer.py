@@ -13,10 +13,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from beamctl.acoustics.air import Air
-from beamctl.engine.envelopes import gain_ramp
 from beamctl.engine.panel import SEGMENT, Panel, interleave
 from beamctl.show import glides
-from beamctl.show.beamstate import MIN_GLIDE_S, BeamState
 from beamctl.show.records import SOUNDING, Record
 from beamctl.show.show import Show
 
@@ -24,14 +22,19 @@ AIMING = frozenset(("aim", "reach", "freeze", "thaw"))
 
 
 class Renderer:
-    """Renders every feed of a show; the gate is closed until a record opens it.
+    """Renders every feed of a show, as it goes to the final stage.
 
     sounds  prepared analytic signals by panel (their band is its carrier's) and sound name,
             (frames, 2) float32 at half the device rate
     """
 
-    def __init__(self, show: Show, sounds: Mapping[str, Mapping[str, NDArray[np.float32]]]) -> None:
-        self.position = 0
+    def __init__(
+        self,
+        show: Show,
+        sounds: Mapping[str, Mapping[str, NDArray[np.float32]]],
+        start: int = 0,
+    ) -> None:
+        self.position = start
         self.rate_hz = show.rig.rate_hz
         self.channels = show.channels
         self._sounds = sounds
@@ -45,8 +48,6 @@ class Renderer:
             self.panels[name] = panel
             self._first[name] = spec.first_feed - 1
             self._beams |= {b: (panel, i) for i, b in enumerate(beams)}
-        self._gate = BeamState(self.rate_hz)  # its level row is the gate
-        self._gate_gain = np.zeros(SEGMENT, np.float32)
         self._waiting: list[tuple[int, int, Record]] = []
         self._count = 0
 
@@ -86,10 +87,6 @@ class Renderer:
             told.append((peak, float(panel.buffers.total.min())))
         return told
 
-    def gate_open_at(self, sample: int) -> float:
-        """Gain of the gate, 0 to 1."""
-        return float(np.sqrt(self._gate.power_at(sample)))
-
     def _take_records(self) -> None:
         offset = self.position % SEGMENT
         if offset == 0:
@@ -99,11 +96,6 @@ class Renderer:
             self._apply(heapq.heappop(self._waiting)[2], offset)
 
     def _apply(self, record: Record, offset: int) -> None:
-        if record.what == "gate":
-            power = float(record.args["open"])
-            level = {"power": power, "n": record.args["n"]}
-            self._gate.apply(Record(record.sample, "level", args=level))
-            return
         panel, index = self._beams[record.beam]
         state = panel.states[index]
         state.apply(record)
@@ -115,16 +107,9 @@ class Renderer:
     def _step(self, out: NDArray[np.float32], offset: int) -> None:
         n = len(out)
         segment = self.position - offset
-        gate = self._gate_gain[:n]
-        gain_ramp(gate, self._gate.level, self.position, n)
         out[:] = 0.0
         for name, panel in self.panels.items():
             if not panel.idle:
                 panel.step(segment, offset, offset + n, self._sounds[name])
-                interleave(out, self._first[name], panel.buffers.out, gate, offset)
+                interleave(out, self._first[name], panel.buffers.out, offset)
         self.position += n
-
-
-def hush_n(rate_hz: int) -> int:
-    """Samples of the ramp that a hush takes: the shortest there is."""
-    return round(MIN_GLIDE_S * rate_hz)

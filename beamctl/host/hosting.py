@@ -6,40 +6,40 @@ the loop's queue, so that a desk that freezes or floods cannot touch the show.
 
 from __future__ import annotations
 
-import contextlib
-import json
 import queue
-import threading
 import time
 from collections import deque
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from datetime import datetime
-from multiprocessing import get_context
-from multiprocessing.connection import Client, Connection, Listener
 from pathlib import Path
 from typing import Any
 
-from beamctl.errors import DeviceError
+from beamctl.engine import layout as at
+from beamctl.engine.chain import wires_of
+from beamctl.engine.drift import Drift
+from beamctl.errors import BeamctlError, DeviceError
 from beamctl.files.reader import load_show
+from beamctl.host import counters
 from beamctl.host.asking import event_of
-from beamctl.host.engine_process import engine_main
+from beamctl.host.batches import Batches
+from beamctl.host.desks import Door
 from beamctl.host.journal import Journal
+from beamctl.host.keeper import Keeper
 from beamctl.host.link import encode
-from beamctl.host.offline import left
 from beamctl.host.picture import Picture
-from beamctl.host.places import new_journal, runtime_folder, show_key, socket_address, state_folder
-from beamctl.host.status import Status
-from beamctl.show.events import Event
+from beamctl.host.places import new_journal, socket_address
+from beamctl.show.events import Acknowledge, Event
 from beamctl.show.player import Player
-from beamctl.show.records import SOUNDING, Record
-from beamctl.snapshot import Answer, EngineView
+from beamctl.show.records import FINAL, Record
+from beamctl.snapshot import Answer
 
 TICK_S = 0.004
 AHEAD_S = 0.025  # how far ahead of the engine acts are handed over
 SLACK_QUANTA = 1  # between what the engine has reached and the sample an event is given
+LEASE_S = 0.15
 SNAPSHOT_S = 0.04
+COUNTERS_S = 10.0
 STOP_S = 5.0
-LONGEST_MESSAGE = 65_536
 
 
 class Host:
@@ -47,30 +47,29 @@ class Host:
 
     def __init__(self, folder: Path, sink: str, journal: Path | None = None) -> None:
         self.show = load_show(folder)
-        self.address = socket_address(folder)
-        _refuse_second(self.address, folder)
+        self._inbox: queue.SimpleQueue[Callable[[], None]] = queue.SimpleQueue()
+        self._door = Door(socket_address(folder), folder, self._from_desk)
         now = datetime.now().astimezone()
         self.journal = Journal(journal or new_journal(self.show.sheet.title, now), self.show, sink)
         self._sink = sink
         self._player = Player(self.show)
         self._picture = Picture(self.show)
         self._notices: deque[str] = deque(maxlen=100)
-        self._inbox: queue.SimpleQueue[tuple[str, dict[str, Any], Any]] = queue.SimpleQueue()
-        self._batches: deque[tuple[int, list[Record], bool]] = deque()
-        self._batch = 0
+        self._batches = Batches(self._write)
+        self._ratings = [wire.rating for wire in wires_of(self.show)]
+        self._drift = Drift(self.show.rig.rate_hz)
         self._busy = "starting"
-        self._ready: dict[str, Any] = {}
         self._left: dict[str, Any] | None = None
         self._stopping = False
-        self._failure: DeviceError | None = None
+        self._failure: BeamctlError | None = None
+        self._opened_once = False
         self._snapshot: tuple[float, bytes] = (-1.0, b"")
-        self._status = Status.create(runtime_folder() / f"{show_key(folder)}.status")
-        self._listener = Listener(self.address)
-        threading.Thread(target=self._accept, daemon=True).start()
-        self._engine, self._line = self._start_engine()
+        self._counted_at = time.monotonic()
+        self._keeper = Keeper(self.show, sink, self._hear)
+        self._keeper.start()
 
     def run(self) -> int:
-        """Serve until stopped; returns an exit code. DeviceError when the engine cannot start."""
+        """Serve until stopped; returns an exit code. BeamctlError when the engine cannot start."""
         try:
             while not self._stopping:
                 self._take(TICK_S)
@@ -85,131 +84,157 @@ class Host:
         """End the loop at its next turn; may be called from a signal handler."""
         self._stopping = True
 
+    # -- the loop --------------------------------------------------------------------------------
+
+    def _take(self, timeout_s: float) -> None:
+        """Do what waits in the queue, and wait at most `timeout_s` for the first of it."""
+        try:
+            self._inbox.get(timeout=timeout_s)()
+            while True:
+                self._inbox.get_nowait()()
+        except queue.Empty:
+            return
+
+    def _tick(self) -> None:
+        if self._keeper.watch():
+            self._notice("engine stalled and was ended")
+        if self._player.output in ("SHUT", "OPEN", "HUSHED"):
+            self._renew_lease()
+            self._tell_final_stage()
+            ahead = round(AHEAD_S * self.show.rig.rate_hz)
+            self._send(self._player.advance(self._now() + ahead))
+            self._count()
+        elif (names := self._keeper.look()) is not None and self._sink not in names:
+            self._notice(f"needed {self._sink}, offered {', '.join(names) or 'no device'}")
+
+    def _now(self) -> int:
+        """The frame that the engine renders next."""
+        outlet = self._keeper.outlet
+        return 0 if outlet is None else outlet.count(at.WRITTEN)
+
+    # -- the final stage -------------------------------------------------------------------------
+
+    def _renew_lease(self) -> None:
+        """The door that the guard will use: drive ceilings, and up to which frame they hold."""
+        if (outlet := self._keeper.outlet) is not None:
+            life = round(LEASE_S * self.show.rig.rate_hz)
+            outlet.grant(outlet.count(at.READ) + life, self._ratings)
+            self._drift.note(outlet.count(at.LAST_NS), outlet.count(at.LAST_READ))
+
+    def _tell_final_stage(self) -> None:
+        """Put into the journal what the final stage did, and act on what nobody asked for."""
+        outlet = self._keeper.outlet
+        for event in outlet.events() if outlet is not None else ():
+            if event.name in ("opened", "hushed", "lease-over"):
+                args = {"open": int(event.name == "opened"), "n": event.value, "why": event.name}
+                self._write([Record(event.sample, "gate", args=args)])
+            elif event.name == "dry":
+                self._write([Record(event.sample, "dry", args={"n": event.value})])
+            else:
+                self._write([Record(event.sample, "fault", args={event.name: event.value})])
+                self._notice(f"{event.name} on feed {event.value}")
+            if event.name == "lease-over" and self._player.output == "OPEN":
+                self._write(self._player.sink("lease-over", event.sample))
+                self._notice("the lease ran out: the host stalled; * then Enter restores")
+
     # -- the engine ------------------------------------------------------------------------------
 
-    def _start_engine(self) -> tuple[Any, Connection]:
-        context = get_context("spawn")  # a fresh interpreter: no threads or locks inherited
-        ours, theirs = context.Pipe()
-        status = runtime_folder() / f"{show_key(Path(self.show.folder))}.status"
-        log = state_folder() / "engine.log"
-        arguments = (theirs, self.show.folder, self._sink, str(status), str(log))
-        process = context.Process(target=engine_main, args=arguments, daemon=True)
-        process.start()
-        theirs.close()
-        threading.Thread(target=self._hear, args=(ours,), daemon=True).start()
-        return process, ours
-
-    def _hear(self, line: Connection) -> None:
-        try:
-            while True:
-                self._inbox.put(("engine", json.loads(line.recv_bytes()), None))
-        except (EOFError, OSError):
-            self._inbox.put(("engine", {"gone": True}, None))
+    def _hear(self, message: dict[str, Any]) -> None:
+        self._inbox.put(lambda: self._from_engine(message))
 
     def _from_engine(self, message: dict[str, Any]) -> None:
+        if not self._keeper.is_ours(message):
+            return
         if "batch" in message:
-            self._acknowledged(message["batch"], message["moved"])
+            self._batches.settle(message["batch"], message["moved"])
         elif "progress" in message:
             what, done, of = message["progress"]
             self._busy = f"{what}, {done + 1} of {of}" if of > 1 else what
         elif "ready" in message:
-            self._ready, self._busy = message["ready"], ""
-            self._send(self._player.sink("sink-open", 0))
-        elif "closing" in message:
-            n = self.show.rig.rate_hz // 50
-            self._write([Record(message["closing"], "gate", args={"open": 0, "n": n})])
+            self._engine_ready(message["ready"])
         elif "left" in message:
-            self._left = message
+            self._left = message["left"]
         elif "lost" in message:
-            self._notices.append(" ".join(message["lost"]))
-            self._lose()
-            if not self._ready:  # it never sounded: nobody has to be kept from silence
-                self._failure = DeviceError(*message["lost"])
-                self.stop()
-        elif "gone" in message and not self._stopping and self._left is None:
-            if self._player.output != "LOST":
-                self._notices.append("engine gone: nothing sounds; end the host and start it again")
-            self._lose()
+            self._sink_lost(message)
+        elif "gone" in message and not self._stopping:
+            self._engine_gone()
 
-    def _lose(self) -> None:
-        self._busy = "no sink"
+    def _engine_ready(self, ready: dict[str, Any]) -> None:
+        self._busy, self._opened_once, self._left = "", True, None
+        self._drift = Drift(self.show.rig.rate_hz)
+        start = self._keeper.opened(ready)
+        self._write([Record(start, "stream", args=ready)])
+        self._send(self._player.sink("sink-open", self._stamp()))
+
+    def _sink_lost(self, message: dict[str, Any]) -> None:
+        what, do = message["lost"]
+        if not self._opened_once:  # it never sounded: the command line tells, and ends
+            self._failure = DeviceError(what, do, message["code"])
+            self.stop()
+            return
+        self._notice(what)
+        self._lose("looking for the sink")
+        self._keeper.look_for_sink()
+
+    def _engine_gone(self) -> None:
+        if self._player.output == "LOST" and self._busy == "looking for the sink":
+            return
+        if not self._opened_once:
+            self._failure = DeviceError("the engine ended while it started", "its log tells why")
+            self.stop()
+            return
+        self._tell_final_stage()
+        self._lose("engine gone: starting another")
+        self._notice("engine gone; what looped comes back with * then Enter")
+        if not self._keeper.died():
+            self._busy = "engine gone three times in a minute"
+            self._notice("three engines died in a minute: end the host and look for the cause")
+
+    def _lose(self, busy: str) -> None:
+        self._busy = busy
+        self._batches.forget()
         self._write(self._player.sink("sink-lost", self._now()))
 
     # -- records ---------------------------------------------------------------------------------
 
-    def _now(self) -> int:
-        return self._status["rendered"]
+    def _stamp(self) -> int:
+        """The sample that an event is given."""
+        return self._now() + SLACK_QUANTA * self.show.rig.quantum
 
     def _send(self, records: list[Record]) -> None:
-        """Hand a batch to the engine, and keep it for the journal until its samples are certain."""
-        if not records:
-            return
-        sounding = [r for r in records if r.what in SOUNDING]
-        self._batch += 1
-        self._batches.append((self._batch, records, not sounding))
-        if sounding:
-            rows = [json.loads(r.to_json()) for r in sounding]
-            try:
-                self._line.send_bytes(encode({"batch": self._batch, "records": rows}))
-            except OSError:
-                self._batches.pop()
-                return
-        self._flush()
-
-    def _acknowledged(self, batch: int, moved: int) -> None:
-        self._batches = deque(
-            (n, [r.later(moved) for r in records], True) if n == batch else (n, records, certain)
-            for n, records, certain in self._batches
-        )
-        self._flush()
-
-    def _flush(self) -> None:
-        while self._batches and self._batches[0][2]:
-            self._write(self._batches.popleft()[1])
+        """Hand records to the engine; those of the final stage are asked of it, not of the engine."""
+        outlet = self._keeper.outlet
+        for record in records:
+            if record.what == "gate" and outlet is not None:
+                if record.args["open"]:
+                    outlet.ask_open(int(record.args["n"]))
+                else:
+                    outlet.hush()
+        self._batches.send([r for r in records if r.what not in FINAL], self._keeper.send)
 
     def _write(self, records: Iterable[Record]) -> None:
         self.journal.write(records)
-        if self.journal.problem and self.journal.problem not in self._notices:
-            self._notices.append(self.journal.problem)
+        if self.journal.problem:
+            self._notice(self.journal.problem)
 
-    def _tick(self) -> None:
-        if self._player.output in ("SHUT", "OPEN", "HUSHED"):
-            ahead = round(AHEAD_S * self.show.rig.rate_hz)
-            self._send(self._player.advance(self._now() + ahead))
+    def _count(self) -> None:
+        """Counters into the journal, every now and then while it may sound."""
+        now = time.monotonic()
+        outlet = self._keeper.outlet
+        if outlet is not None and now - self._counted_at > COUNTERS_S:
+            self._counted_at = now
+            if self._player.output == "OPEN":
+                args = counters.of(outlet, self._keeper.status, self._drift)
+                self._write([Record(self._now(), "counters", args=args)])
+
+    def _notice(self, text: str) -> None:
+        if text not in self._notices:
+            self._notices.append(text)
 
     # -- desks -----------------------------------------------------------------------------------
 
-    def _accept(self) -> None:
-        while True:
-            try:
-                connection = self._listener.accept()
-            except OSError:
-                return
-            threading.Thread(target=self._serve, args=(connection,), daemon=True).start()
-
-    def _serve(self, connection: Connection) -> None:
-        """One desk: pass its messages to the loop, one at a time, and its answers back."""
-        answers: queue.SimpleQueue[bytes] = queue.SimpleQueue()
-        try:
-            while True:
-                message = json.loads(connection.recv_bytes(LONGEST_MESSAGE))
-                self._inbox.put(("desk", message, answers))
-                connection.send_bytes(answers.get())
-        except (EOFError, OSError, ValueError, RecursionError):
-            connection.close()
-
-    def _take(self, timeout_s: float) -> None:
-        """Handle what waits in the queue, and wait at most `timeout_s` for the first of it."""
-        try:
-            source, message, answers = self._inbox.get(timeout=timeout_s)
-            while True:
-                if source == "engine":
-                    self._from_engine(message)
-                else:
-                    answers.put(self._answer(message))
-                source, message, answers = self._inbox.get_nowait()
-        except queue.Empty:
-            return
+    def _from_desk(self, message: Any, answer: Callable[[bytes], None]) -> None:
+        self._inbox.put(lambda: answer(self._answer(message)))
 
     def _answer(self, message: Any) -> bytes:
         do = message.get("do") if isinstance(message, dict) else None
@@ -225,9 +250,10 @@ class Host:
         return encode(Answer(False, "bad-type", "the host knows no such request"))
 
     def _handle(self, event: Event) -> Answer:
-        sample = self._now() + SLACK_QUANTA * self.show.rig.quantum
+        sample = self._stamp()
+        self._send(self._player.advance(sample))  # so that the answer is to this event alone
         records = self._player.handle(event, sample)
-        if type(event).__name__ == "Acknowledge" and self._notices:
+        if isinstance(event, Acknowledge) and self._notices:
             self._notices.popleft()
         self._send(records)
         self._snapshot = (-1.0, b"")
@@ -239,52 +265,28 @@ class Host:
     def _current_snapshot(self) -> bytes:
         now = time.monotonic()
         if now - self._snapshot[0] > SNAPSHOT_S:
-            picture = self._picture.snapshot(
-                self._player, self._status, self._engine_view(), self._notices
-            )
+            keeper = self._keeper
+            engine = counters.view(self.show, self._sink, keeper, self._drift, self._busy)
+            picture = self._picture.snapshot(self._player, keeper.status, engine, self._notices)
             self._snapshot = (now, encode(picture))
         return self._snapshot[1]
-
-    def _engine_view(self) -> EngineView:
-        rig, status = self.show.rig, self._status
-        return EngineView(
-            sink=self._sink,
-            rate_hz=rig.rate_hz,
-            feeds=self.show.channels,
-            quantum=rig.quantum,
-            ring_ms=rig.ring_ms,
-            rendered=status["rendered"],
-            late=status["late"],
-            load_pct=status["load_ppm"] / 1e4,
-            compile_s=self._ready.get("compile_s", 0.0),
-            busy=self._busy,
-            route=self._ready.get("route", ""),
-        )
 
     # -- the end ---------------------------------------------------------------------------------
 
     def _close(self) -> None:
         """Let the engine go by its ramp, write what left, and take the socket away."""
         self._stopping = True
-        with contextlib.suppress(OSError):
-            self._line.send_bytes(encode({"stop": True}))
+        self._keeper.send({"stop": True})
         until = time.monotonic() + STOP_S
-        while self._left is None and self._engine.is_alive() and time.monotonic() < until:
+        while self._left is None and self._keeper.alive() and time.monotonic() < until:
+            self._renew_lease()
             self._take(TICK_S)
-        self._engine.join(STOP_S)
         self._take(0.0)
+        self._tell_final_stage()
+        self._batches.forget()
         self._write(self._player.sink("sink-close", self._now()))
         if self._left is not None:
-            self._write([left(self._left["left"], self._left["sha256"])])
+            self._write([Record(self._left["written"], "left", args=self._left)])
+        self._keeper.end(STOP_S)
         self.journal.close()
-        self._listener.close()
-
-
-def _refuse_second(address: str, folder: Path) -> None:
-    """DeviceError when a host runs this show already; a socket left by a dead one is removed."""
-    try:
-        Client(address).close()
-    except (FileNotFoundError, ConnectionError):
-        Path(address).unlink(missing_ok=True)
-        return
-    raise DeviceError(f"a host runs {folder} already", f"`beamctl desk {folder}` joins it")
+        self._door.close()

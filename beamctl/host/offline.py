@@ -1,4 +1,4 @@
-"""The same player and renderer without a clock: `render` and `replay`."""
+"""The same player, renderer and final stage without a clock: `render` and `replay`."""
 
 from __future__ import annotations
 
@@ -6,16 +6,17 @@ import hashlib
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import Future, ThreadPoolExecutor
+from dataclasses import dataclass, field
 from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
 
-from beamctl.engine.renderer import Renderer
+from beamctl.engine.chain import Chain
 from beamctl.errors import ShowError
 from beamctl.files.reader import load_show
 from beamctl.host.journal import read_journal
-from beamctl.host.loading import digests, prepare_sounds
+from beamctl.host.loading import Sounds, digests, prepare_sounds
 from beamctl.host.warming import warm
 from beamctl.show.events import Confirm, Go, Ready
 from beamctl.show.player import Player
@@ -57,39 +58,33 @@ def render(
     sounds = prepare_sounds(show, progress)
     progress("compiled code", 0, 1)
     warm(show)
-    renderer = Renderer(show, sounds)
-    for record in records:
-        renderer.put(record)
-    digest = hashlib.sha256()
-
-    def keep(block: NDArray[np.float32]) -> None:
-        digest.update(block.data)
-        write(block)
-
-    # one thread renders while the other writes, a few blocks behind
-    with ThreadPoolExecutor(max_workers=1) as keeper:
-        waiting: deque[Future[None]] = deque()
-        while renderer.position < samples:
-            block = np.zeros((min(BLOCK, samples - renderer.position), show.channels), np.float32)
-            renderer.render(block)
-            waiting.append(keeper.submit(keep, block))
-            if len(waiting) > BLOCKS_BEHIND:
-                waiting.popleft().result()
-            progress("rendering", renderer.position, samples)
-        for block_kept in waiting:
-            block_kept.result()
-    return digest.hexdigest()
+    stream = Stream(0, list(records))
+    return _play(show, sounds, stream, samples, write, progress)
 
 
-def left(samples: int, digest: str) -> Record:
-    """The record that closes a journal."""
-    return Record(samples, "left", args={"sha256": digest})
+@dataclass(slots=True)
+class Stream:
+    """What one engine sent: its first frame, its records, and how it ended."""
+
+    start: int
+    records: list[Record] = field(default_factory=list)
+    left: Record | None = None
 
 
-def recall(path: Path) -> tuple[Show, list[Record]]:
-    """The show that a journal was made from, and its records up to `left`.
+@dataclass(frozen=True, slots=True)
+class Outcome:
+    """A stream rendered again; `same` is None for one that was cut off without a digest."""
 
-    ShowError when the show has changed since, or the journal was cut before its end.
+    start: int
+    samples: int
+    digest: str
+    same: bool | None
+
+
+def recall(path: Path) -> tuple[Show, list[Stream]]:
+    """The show that a journal was made from, and what each of its engines sent.
+
+    ShowError when the show has changed since, or no sink was ever open.
     """
     header, kept = read_journal(path)
     show = load_show(Path(header.folder))
@@ -100,7 +95,98 @@ def recall(path: Path) -> tuple[Show, list[Record]]:
             f"{header.folder}: {', '.join(changed)} changed since {path.name}",
             "put the files back as they were to hear what was sent",
         )
-    records = list(kept)
-    if not records or records[-1].what != "left":
-        raise ShowError(f"{path}: ends before its `left` line", "the host was cut off")
-    return show, records
+    streams = _streams(kept)
+    if not streams:
+        raise ShowError(f"{path}: no sink was ever open", "there is nothing to render")
+    return show, streams
+
+
+def replay(show: Show, streams: list[Stream], write: Write, progress: Progress) -> list[Outcome]:
+    """Render streams again, and compare each with what left then.
+
+    For a device, which cannot count what it played, the samples that entered the ring are compared.
+    """
+    sounds = prepare_sounds(show, progress)
+    warm(show)
+    return [_again(show, sounds, stream, write, progress) for stream in streams]
+
+
+def _streams(records: Iterable[Record]) -> list[Stream]:
+    streams: list[Stream] = []
+    for record in records:
+        if record.what == "stream":
+            streams.append(Stream(record.sample))
+        elif record.what == "left" and streams:
+            streams[-1].left = record
+        elif streams:
+            streams[-1].records.append(record)
+    return streams
+
+
+def _again(show: Show, sounds: Sounds, stream: Stream, write: Write, progress: Progress) -> Outcome:
+    if stream.left is None:
+        last = max((r.sample for r in stream.records), default=stream.start)
+        digest = _play(show, sounds, stream, last, write, progress)
+        return Outcome(stream.start, last - stream.start, digest, None)
+    args = stream.left.args
+    if args["left"] is not None:
+        digest = _play(show, sounds, stream, int(args["read"]), write, progress)
+        return Outcome(
+            stream.start, int(args["read"]) - stream.start, digest, digest == args["left"]
+        )
+    entered = Entered(int(args["written"]))
+    _play(show, sounds, stream, int(args["written"]), write, progress, entered.take)
+    digest = entered.hash.hexdigest()
+    samples = int(args["written"]) - stream.start
+    return Outcome(stream.start, samples, digest, digest == args["entered"])
+
+
+class Entered:
+    """Hash of what enters the ring, up to a frame."""
+
+    def __init__(self, until: int) -> None:
+        self.hash = hashlib.sha256()
+        self._until = until
+
+    def take(self, first: int, block: NDArray[np.float32]) -> None:
+        """Frames from `first` on."""
+        self.hash.update(block[: max(0, self._until - first)].data)
+
+
+def _play(
+    show: Show,
+    sounds: Sounds,
+    stream: Stream,
+    until: int,
+    write: Write,
+    progress: Progress,
+    tap: Callable[[int, NDArray[np.float32]], None] | None = None,
+) -> str:
+    """Render a stream up to frame `until`; one thread renders, the other writes a little behind."""
+    chain = Chain(show, sounds, stream.start, tap=tap)
+    for record in stream.records:
+        chain.put(record)
+    digest = hashlib.sha256()
+
+    def keep(block: NDArray[np.float32]) -> None:
+        digest.update(block.data)
+        write(block)
+
+    with ThreadPoolExecutor(max_workers=1) as keeper:
+        waiting: deque[Future[None]] = deque()
+        while chain.position < until:
+            block = np.zeros((min(BLOCK, until - chain.position), show.channels), np.float32)
+            chain.render(block)
+            waiting.append(keeper.submit(keep, block))
+            if len(waiting) > BLOCKS_BEHIND:
+                waiting.popleft().result()
+            progress("rendering", chain.position - stream.start, until - stream.start)
+        for written in waiting:
+            written.result()
+    return digest.hexdigest()
+
+
+def left(samples: int, digest: str) -> Record:
+    """The record that closes the journal of a render."""
+    args = {"entered": "", "left": digest, "written": samples, "read": samples}
+    return Record(samples, "left", args=args)

@@ -26,8 +26,22 @@ def runtime_folder() -> Path:
         folder = Path(session) / "beamctl"
     else:
         folder = Path(tempfile.gettempdir()) / f"beamctl-{user}"
+    return _private(folder)
+
+
+def memory_folder() -> Path:
+    """Where shared memory files are: in memory where the system has a place for that."""
+    shared = Path("/dev/shm")
+    if not shared.is_dir() or not os.access(shared, os.W_OK):
+        return runtime_folder()
+    key = hashlib.sha256(str(runtime_folder()).encode()).hexdigest()[:12]
+    return _private(shared / f"beamctl-{key}")
+
+
+def _private(folder: Path) -> Path:
+    """Make a folder that only this user may enter; DeviceError when another owns it."""
     folder.mkdir(mode=0o700, parents=True, exist_ok=True)
-    if hasattr(os, "getuid") and folder.stat().st_uid != user:
+    if hasattr(os, "getuid") and folder.stat().st_uid != os.getuid():
         raise DeviceError(f"{folder} belongs to another user", "name your own in BEAMCTL_RUNTIME")
     folder.chmod(0o700)
     return folder

@@ -11,7 +11,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-FIELDS = ("rendered", "late", "load_ppm", "beat_ns")
+FIELDS = ("rendered", "load_ppm", "beat_ns")
 PANELS = 64  # more than a rig has
 
 

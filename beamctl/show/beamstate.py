@@ -102,14 +102,7 @@ class BeamState:
 
     def _glide(self, row: Row, sample: int, goal: float, n: int, shortest: float = 0.0) -> None:
         """Take `row` from wherever it is to `goal` over n samples, keeping its slope at first."""
-        value = glides.scalar_at(row, sample)
-        slope = glides.scalar_at(row, sample + 1) - value
-        if abs(slope) < 1e-15:
-            slope = 0.0
-        over = shortest
-        if slope < 0.0:  # never carried below zero: k s (1 - s)² ≤ cos²(π s / 2) for k ≤ (π/2)²
-            over = min(shortest, 2.4 * value / -slope)
-        row[: glides.SCALAR_SIZE] = (sample, n, value, goal, slope, over if slope else 0.0)
+        glides.take_over(row, float(sample), float(n), goal, shortest)
 
     def _level(self, sample: int, args: Any) -> None:
         n = max(int(args["n"]), round(MIN_GLIDE_S * self.rate_hz))

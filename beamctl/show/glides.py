@@ -80,6 +80,24 @@ def scalar_at(row: Any, sample: float) -> float:
 
 
 @register_jitable
+def take_over(row: Any, sample: float, n: float, goal: float, shortest: float) -> None:
+    """Send a scalar row from wherever it is to `goal` over n samples, keeping its slope at first.
+
+    An old slope dies away over `shortest` samples, or less where it would carry the value below
+    zero: k s (1 - s)² ≤ cos²(π s / 2) for k ≤ (π/2)².
+    """
+    value = scalar_at(row, sample)
+    slope = scalar_at(row, sample + 1.0) - value
+    if abs(slope) < 1e-15:
+        slope = 0.0
+    over = shortest
+    if slope < 0.0:
+        over = min(shortest, 2.4 * value / -slope)
+    row[0], row[1], row[2], row[3], row[4] = sample, n, value, goal, slope
+    row[5] = over if slope != 0.0 else 0.0
+
+
+@register_jitable
 def is_settled(row: Any, sample: float) -> bool:
     """True when a scalar row no longer changes at or after `sample`."""
     t = sample - row[0]

@@ -58,6 +58,7 @@ class BeamPlan:
     target: Target = field(default_factory=lambda: Target("", direction=(0.0, 1.0, 0.0)))
     returns_at: int = 0  # until this sample the beam is in a dip: falling, then dark
     ends_at: int | None = None  # one-shot sounds: when the carrier falls
+    lost: str = ""  # the loop it played when the engine went, until it is brought back
     _out: list[Record] = field(default_factory=list)
 
     def perform(
@@ -107,6 +108,34 @@ class BeamPlan:
     def thaw(self, sample: int) -> list[Record]:
         """Carry on with what `freeze` held."""
         self._tell(max(sample, self.returns_at), "thaw")
+        return self._told()
+
+    def lose(self, sample: int) -> None:
+        """The engine is gone: a loop is remembered, a one-shot sound is over."""
+        loops = bool(self.sound) and self.ends_at is None and self.sounding(sample)
+        self.lost = self.sound if loops else ""
+        if not loops:
+            self.sound, self.owner = "", ""
+        self.ends_at, self.returns_at = None, 0
+
+    def set_up(self, sample: int) -> list[Record]:
+        """Tell a new engine, silently, what the beam had when the last one went."""
+        if not self.cue:
+            return []
+        old, self.state = self.state, BeamState(self.rate_hz)
+        follows = bool(old.reach[TO_FOLLOWS])
+        self._place(self.target, sample, 0)
+        self._tell(sample, "reach", per_m="aim" if follows else float(old.reach[TO]), n=0)
+        self._tell(sample, "law", law=old.law_name(), n=0)
+        self._tell(sample, "depth", depth=float(old.depth[TO]), n=0)
+        return self._told()
+
+    def bring_back(self, sample: int, rise_s: float) -> list[Record]:
+        """Records that take up the loop that was lost."""
+        if self.lost:
+            self._tell(sample, "play", sound=self.lost, loop=True)
+            self._level(sample, self._power(), self._n(rise_s))
+            self.lost = ""
         return self._told()
 
     def sounding(self, sample: int) -> bool:

@@ -107,10 +107,28 @@ class Player:
         return records + self._settle(until)
 
     def sink(self, event: str, sample: int) -> list[Record]:
-        """The sink opened, was lost or closed: "sink-open", "sink-lost", "sink-close"."""
+        """What the sink or its engine did: "sink-open", "sink-lost", "lease-over", "sink-close".
+
+        A new engine is told silently what the beams had. What looped when the last one went comes
+        back when somebody arms; all else that ran then is over.
+        """
         if (goal := OUTPUT.get((self.output, event))) is None:
             return []
-        return self._to(goal, sample, event)
+        records = self._to(goal, sample, event)
+        if event == "sink-lost":
+            self._cut(sample)
+        if event == "sink-open":
+            for plan in self.plans.values():
+                records += plan.set_up(sample)
+        return records
+
+    def _cut(self, sample: int) -> None:
+        self.ready_until, self.held_at = -1, None
+        for run in self.runs.values():
+            run.acts.clear()
+            run.follow, run.frozen, run.settles_at = None, 0, sample
+        for plan in self.plans.values():
+            plan.lose(sample)
 
     # -- events ------------------------------------------------------------------------------
 
@@ -228,7 +246,10 @@ class Player:
         gate = Record(sample, "gate", args={"open": 1, "n": rise})
         if act == "arm" and not self.standby and self.show.sheet.cue:
             self._stand(self.show.sheet.cue[0].ref)
-        return [*self._to(goal, sample, act, event.who), gate]
+        records = [*self._to(goal, sample, act, event.who), gate]
+        for plan in self.plans.values():
+            records += plan.bring_back(sample, RESTORE_RISE_S)
+        return records
 
     def _hush(self, event: events.Hush, sample: int) -> list[Record]:
         self.ready_until = -1

@@ -3,7 +3,7 @@
 The player makes them, the engine stamps and renders them, the journal keeps them; live, `render`
 and `replay` read the same stream, so a journal gives back the very samples that were sent.
 
-Records that change sound (`SOUNDING`), each for one beam unless said, with their `args`:
+Records that change what a beam sounds (`SOUNDING`), with their `args`:
 
     play    sound, loop                 start a sound from its beginning
     stop    n                           fade the programme out over n samples
@@ -14,9 +14,16 @@ Records that change sound (`SOUNDING`), each for one beam unless said, with thei
     reach   per_m | "aim", n            focus as 1/metres (0 is far); "aim" keeps it on the target
     freeze  -                           hold every glide of the beam where it is
     thaw    -                           carry on with what was frozen
-    gate    open, n                     every feed of every panel, before the sink (no beam)
 
-All others (`go`, `hush`, `refused`, `output`, `fault` …) tell what was done and by whom.
+Records of what the final stage did, for all feeds (`FINAL`); live it tells them, offline it takes
+them in at their frame:
+
+    gate    open, n, why                the way out opens or shuts, a ramp of n samples
+    dry     n                           the ring ran dry: zeros, then a rise over n samples
+    grant   ceilings                    highest drive per panel, in the order of the rig
+
+`stream` begins what one engine sent: its sample is the first one's number. `left` ends it. All
+others (`go`, `hush`, `refused`, `output`, `fault` …) tell what was done and by whom.
 """
 
 from __future__ import annotations
@@ -26,9 +33,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import Any
 
-SOUNDING = frozenset(
-    ("play", "stop", "level", "depth", "law", "aim", "reach", "freeze", "thaw", "gate")
-)
+SOUNDING = frozenset(("play", "stop", "level", "depth", "law", "aim", "reach", "freeze", "thaw"))
+FINAL = frozenset(("gate", "dry", "grant"))
 
 
 @dataclass(frozen=True, slots=True)

@@ -66,5 +66,5 @@ class Rig(Model):
     format: Literal[1]
     rate_hz: int = Field(192_000, ge=88_200, le=768_000, multiple_of=4)
     quantum: int = Field(256, ge=16, le=4096)
-    ring_ms: float = Field(32.0, ge=4.0, le=500.0)
+    ring_ms: float | None = Field(None, ge=4.0, le=500.0)  # None: 12 real-time, 32 ordinary
     panel: dict[Name, PanelSpec] = Field(min_length=1)

@@ -35,6 +35,7 @@ OUTPUT: dict[tuple[Output, str], Output] = {
     ("HUSHED", "hush"): "HUSHED",
     ("TRIPPED", "hush"): "TRIPPED",
     ("LOST", "hush"): "LOST",
+    ("OPEN", "lease-over"): "HUSHED",
     ("HUSHED", "restore"): "OPEN",
     ("OPEN", "go"): "OPEN",
     ("SHUT", "sink-lost"): "LOST",

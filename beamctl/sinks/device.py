@@ -1,107 +1,139 @@
-"""The sink that plays: paces the writer by the device and notices when the device is gone."""
+"""The sinks that play: a device through the compiled callback, or a thread that writes to it."""
 
 from __future__ import annotations
 
 import math
+import threading
 import time
+from typing import Any
+
+import numpy as np
 
 from beamctl.errors import DeviceError
 from beamctl.sinks import portaudio
-from beamctl.sinks.lines import BlockingLine, CallbackLine, Line
-from beamctl.sinks.sink import Block
+from beamctl.sinks.sink import Outlet
 
-LOST_S = 0.4  # a device that takes nothing for so long is gone
-START_S = 1.0
-CLOSE_S = 1.8
+LOOKAHEAD = 576  # frames that the outlet's last stage sees ahead in the ring
+START_S = 1.0  # for the first callbacks to arrive
+ENOUGH = 3  # callbacks that prove the route
+WRITE_S = 0.4  # the longest that a write to a healthy device takes
+CLOSE_S = 1.2
 
 
 class DeviceSink:
-    """An open device. Silent until its ring was full once; silent whenever the ring is empty."""
+    """An open device that asks for its samples itself, without Python."""
 
-    def __init__(self, name: str, rate_hz: int, channels: int, quantum: int, line: Line) -> None:
+    route = "compiled callback"
+    digest: str | None = None
+
+    def __init__(self, name: str, rate_hz: int, outlet: Outlet, stream: Any) -> None:
         self.name = name
         self.rate_hz = rate_hz
-        self.channels = channels
-        self.route = line.route
-        self.latency_s = line.latency_s
-        self.line = line
-        self._nap_s = quantum / rate_hz / 3.0
+        self.channels = outlet.channels
+        self.trouble: DeviceError | None = None
+        self._outlet = outlet
+        self._stream = stream
         self._closed = False
-        self._pulse = line.pulse
-        self._pulse_s = time.monotonic()
 
     @property
-    def late(self) -> int:
-        """Times the device asked for more than there was."""
-        return self.line.late
-
-    def write(self, block: Block) -> None:
-        """Take (n, channels) as the device makes room. Raises DeviceError when it is gone."""
-        with portaudio.translated(self.name):
-            rest = block
-            while len(rest):
-                if self._closed:
-                    raise DeviceError(f"the sink {self.name} is closed", "open it again")
-                room = min(self.line.room, len(rest))
-                if room > 0:
-                    self.line.push(rest[:room])
-                    rest = rest[room:]
-                else:
-                    self._watch()
-                    time.sleep(self._nap_s)
+    def period(self) -> int:
+        """The most frames that the device asked for at once."""
+        return self._outlet.block
 
     def close(self) -> None:
         """Stop the device; what is still in the ring is not played."""
         if not self._closed:
             self._closed = True
-            portaudio.close(self.line.stream, CLOSE_S)
+            self._stop()
 
-    def _watch(self) -> None:
-        pulse, now_s = self.line.pulse, time.monotonic()
-        if pulse != self._pulse:
-            self._pulse, self._pulse_s = pulse, now_s
-        elif now_s - self._pulse_s > LOST_S:
-            portaudio.give_up()
-            raise DeviceError(
-                f"{self.name} is lost: it took no sample for {LOST_S * 1000:.0f} ms",
-                "check its cable, power and driver, then open it again",
-            )
+    def abandon(self) -> None:
+        """Leave a lost device as it is: whoever waits for it may wait for ever."""
+        self._closed = True
+        portaudio.give_up()
+
+    def _stop(self) -> None:
+        portaudio.close(self._stream, CLOSE_S)
 
 
-def open_device(name: str, rate_hz: int, channels: int, ring_ms: float, quantum: int) -> DeviceSink:
+class WritingSink(DeviceSink):
+    """An open device where the compiled callback is never called: a thread pulls and writes.
+
+    PortAudio's own buffer comes on top of the ring, and is as long.
+    """
+
+    route = "blocking writes"
+
+    def __init__(self, name: str, rate_hz: int, outlet: Outlet, quantum: int, stream: Any) -> None:
+        super().__init__(name, rate_hz, outlet, stream)
+        self._quantum = quantum
+        self._thread = threading.Thread(target=self._play, name="playing", daemon=True)
+        self._thread.start()
+
+    @property
+    def period(self) -> int:
+        """Frames a write."""
+        return self._quantum
+
+    def _stop(self) -> None:
+        self._thread.join(WRITE_S)  # or PortAudio would be stopped under a write
+        super()._stop()
+
+    def _play(self) -> None:
+        block = np.zeros((self._quantum, self.channels), np.float32)
+        try:
+            with portaudio.translated(self.name):
+                while not self._closed:
+                    self._outlet.pull(block, time.monotonic_ns())
+                    self._stream.write(block)
+        except DeviceError as error:
+            if not self._closed:
+                self.trouble = error
+
+
+def open_device(
+    name: str, rate_hz: int, outlet: Outlet, callback_address: int, quantum: int
+) -> DeviceSink:
     """Open the output device of exactly this name, rate and channels, or raise DeviceError."""
     device = portaudio.find(name)
-    portaudio.check(device, rate_hz, channels)
-    frames = max(2 * quantum, math.ceil(ring_ms * rate_hz / 1000.0))
-    line: Line | None = _callback_line(device, rate_hz, channels, frames, quantum)
-    if line is None:
-        line = BlockingLine(portaudio.open_blocking(device, rate_hz, channels, frames / rate_hz))
-    return DeviceSink(name, rate_hz, channels, quantum, line)
+    portaudio.check(device, rate_hz, outlet.channels)
+    stream = _callback_stream(device, rate_hz, outlet, callback_address)
+    if stream is None:
+        latency_s = outlet.frames / rate_hz
+        stream = portaudio.open_blocking(device, rate_hz, outlet.channels, latency_s)
+        sink: DeviceSink = WritingSink(name, rate_hz, outlet, quantum, stream)
+    else:
+        sink = DeviceSink(name, rate_hz, outlet, stream)
+    needed = sink.period + quantum + LOOKAHEAD
+    if needed > outlet.frames:
+        sink.close()
+        raise DeviceError(
+            f"{device.info.name} takes {sink.period} samples at once; "
+            f"the ring holds {outlet.frames}, and needs {needed}",
+            f"set ring_ms to {math.ceil(needed * 1000.0 / rate_hz)} or more, "
+            "or choose a shorter period for the device",
+        )
+    return sink
 
 
-def _callback_line(
-    device: portaudio.Device, rate_hz: int, channels: int, frames: int, quantum: int
-) -> CallbackLine | None:
-    """The compiled route, proved by callbacks that arrive; None where none does."""
-    from beamctl.sinks.callback import ADDRESS
-    from beamctl.sinks.ring import Ring
-
-    ring = Ring(frames, channels)
+def _callback_stream(
+    device: portaudio.Device, rate_hz: int, outlet: Outlet, callback_address: int
+) -> Any:
+    """A stream on the compiled route, proved by callbacks that arrive; None where none does."""
+    proved = outlet.callbacks + ENOUGH
     try:
-        stream = portaudio.open_callback(device, rate_hz, channels, ADDRESS, ring.memory)
+        stream = portaudio.open_callback(
+            device, rate_hz, outlet.channels, callback_address, outlet.memory
+        )
     except (AttributeError, TypeError):  # a sounddevice without this way in
         return None
-    deadline_s = time.monotonic() + START_S
-    while ring.callbacks < 3 and time.monotonic() < deadline_s:
+    until_s = time.monotonic() + START_S
+    while outlet.callbacks < proved and time.monotonic() < until_s:
         time.sleep(0.005)
-    if ring.callbacks < 3:
-        portaudio.close(stream, CLOSE_S)
-        return None
-    if ring.block + quantum > frames:
-        portaudio.close(stream, CLOSE_S)
-        needed_ms = math.ceil((ring.block + quantum) * 1000.0 / rate_hz)
+    if outlet.callbacks >= proved:
+        return stream
+    if not portaudio.close(stream, CLOSE_S):  # it might still call: two would empty one ring
         raise DeviceError(
-            f"{device.info.name} takes {ring.block} samples at once; the ring holds {frames}",
-            f"set ring_ms to {needed_ms} or more, or choose a shorter period for the device",
+            f"{device.info.name} takes no samples and does not answer",
+            "check its cable, power and driver, then open it again",
         )
-    return CallbackLine(stream, ring, rate_hz)
+    return None

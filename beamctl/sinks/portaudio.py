@@ -106,8 +106,8 @@ def open_blocking(device: Device, rate_hz: int, channels: int, latency_s: float)
         return _started(stream, None)
 
 
-def close(stream: Any, limit_s: float) -> None:
-    """Stop and close a stream; after `limit_s` leave it alone, for a lost device may never answer.
+def close(stream: Any, limit_s: float) -> bool:
+    """Stop and close a stream; True once it is. After `limit_s` leave it: it may never answer.
 
     Whoever asks for devices after that needs a fresh process.
     """
@@ -122,6 +122,8 @@ def close(stream: Any, limit_s: float) -> None:
     thread.join(limit_s)
     if thread.is_alive():
         give_up()
+        return False
+    return True
 
 
 def give_up() -> None:

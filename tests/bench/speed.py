@@ -79,7 +79,6 @@ def moving_renderer(columns: int, rows: int, beams: int) -> Renderer:
     names = tuple(f"b{i}" for i in range(beams))
     show = make_show(names, cells=grid(columns, rows), q=20.0)
     renderer = Renderer(show, {"p": {"tone": analytic_tone(1000.0, 1.0)}})
-    renderer.put(Record(0, "gate", args={"open": 1, "n": 3840}))
     for i, name in enumerate(names):
         first = [np.sin(-0.5), np.cos(-0.5), 0.01 * i]
         goal = [np.sin(0.5), np.cos(0.5), 0.01 * i]

@@ -120,12 +120,17 @@ def test_panels_beyond_the_room_are_counted(view: Make) -> None:
 
 
 def test_sink(view: Make) -> None:
-    text = text_of(sink_row(view(), 80))
-    for part in ("null", "192 kHz", "80 feeds", "quantum 256", "ring 32 ms", "late 0", "load 12 %"):
+    engine = replace(view().snapshot.engine, fill_ms=30.6, longest_ms=6.2, drift_ppm=-0.34)
+    text = text_of(sink_row(view(engine=engine), 80))
+    for part in ("null", "192 kHz", "80 feeds", "late 0", "load 12 %", "ring 32 ms, fill 31"):
         assert part in text
-    engine = replace(view().snapshot.engine, late=3, load_pct=91.0)
-    roles = {span.text: span.role for span in sink_row(view(engine=engine), 80)}
-    assert roles["late 3"] == roles["load 91 %"] == "attention"
+    engine = replace(engine, priority="real-time 20", route="clock", callbacks=77)
+    text = text_of(sink_row(view(engine=engine), 200))
+    for part in ("gap 6 ms", "drift -0.3 ppm", "real-time 20", "quantum 256", "clock", "77 calls"):
+        assert part in text
+    engine = replace(engine, late=3, load_pct=91.0, route="blocking writes")
+    roles = {span.text: span.role for span in sink_row(view(engine=engine), 200)}
+    assert roles["late 3"] == roles["load 91 %"] == roles["blocking writes"] == "attention"
 
 
 def test_sink_that_is_not_ready_says_what_it_waits_for(view: Make) -> None:

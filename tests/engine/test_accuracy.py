@@ -20,7 +20,6 @@ def rendered(law: str, depth: float, tone_hz: float, moving: bool, columns: int,
     show = make_show(cells=cells, q=q, max_volts=5.0)
     renderer = Renderer(show, {"p": {"tone": analytic_tone(tone_hz, 1.0)}})
     first = np.array([np.sin(-0.3), np.cos(-0.3), 0.0])
-    renderer.put(Record(0, "gate", args={"open": 1, "n": 3840}))
     renderer.put(Record(START, "aim", "a", args={"direction": first.tolist(), "n": 0}))
     renderer.put(Record(START, "law", "a", args={"law": law, "n": 0}))
     renderer.put(Record(START, "depth", "a", args={"depth": depth, "n": 0}))
@@ -70,7 +69,6 @@ def test_every_block_size_gives_the_same_bits():
     for block in (256, 1, 64, 333, 1024):
         show = make_show(("a", "b"))
         renderer = Renderer(show, {"p": {"tone": analytic_tone(700.0, 0.05)}})
-        renderer.put(Record(0, "gate", args={"open": 1, "n": 3840}))
         for beam, at in (("a", 101), ("b", 777)):
             renderer.put(Record(at, "aim", beam, args={"direction": [0.0, 1.0, 0.0], "n": 0}))
             renderer.put(Record(at, "play", beam, args={"sound": "tone", "loop": True}))

@@ -146,7 +146,6 @@ class Rendered:
         self.first = drawn.spec["first_feed"] - 1
         self.omega = 2.0 * np.pi * drawn.spec["carrier_hz"] / RATE
         put = self.renderer.put
-        put(Record(0, "gate", args={"open": 1, "n": 3840}))
         put(Record(0, "play", "a", args={"sound": "tone", "loop": True}))
         put(Record(0, "level", "a", args={"power": 1.0, "n": 3840}))
         self._render(5_000)

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import hashlib
 import threading
+import time
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -10,6 +12,8 @@ import numpy as np
 import pytest
 import soundfile
 from numpy.typing import NDArray
+from support.collecting import Collecting
+from support.running import wait_for
 
 from beamctl.errors import DeviceError
 from beamctl.sinks import recording
@@ -90,34 +94,50 @@ def test_a_full_disk_is_said_and_leaves_no_file_of_the_asked_name(tmp_path: Path
     assert [p.name for p in tmp_path.iterdir()] == ["out.wav.part"]
 
 
-def test_the_recording_sink_keeps_what_was_written(tmp_path: Path) -> None:
-    path = tmp_path / "take.wav"
-    samples = noise(256 * 40, 64)
-    sink = open_sink(f"file:{path}", RATE_HZ, 64, 32.0, 256)
-    block = np.empty((256, 64), np.float32)
-    for start in range(0, len(samples), 256):
-        block[:] = samples[start : start + 256]  # one buffer, used again, as the renderer does
-        sink.write(block)
+def test_a_recording_holds_what_was_pulled(tmp_path: Path) -> None:
+    path, outlet = tmp_path / "take.wav", Collecting(64)
+    sink = open_sink(f"file:{path}", RATE_HZ, outlet, 0, 256)
+    wait_for(lambda: outlet.callbacks >= 40, "some pulls")
     sink.close()
     sink.close()
+    assert (sink.name, sink.route) == (f"file:{path}", "clock, to file")
     back, _rate = soundfile.read(path, dtype="float32", always_2d=True)
-    np.testing.assert_array_equal(back, samples)
+    np.testing.assert_array_equal(back.view(np.uint32), outlet.everything.view(np.uint32))
+    assert sink.digest == hashlib.sha256(back.tobytes()).hexdigest()
+
+
+def test_a_recording_is_never_overwritten(tmp_path: Path) -> None:
+    died, whole = tmp_path / "take.wav.part", tmp_path / "take.2.wav"
+    died.write_bytes(b"of an engine that died")
+    whole.write_bytes(b"of one that closed")
+    outlet = Collecting(2)
+    sink = open_sink(f"file:{tmp_path / 'take.wav'}", RATE_HZ, outlet, 0, 256)
+    wait_for(lambda: outlet.callbacks > 0, "a pull")
+    sink.close()
+    assert sink.name == f"file:{tmp_path / 'take.3.wav'}"
+    assert died.read_bytes() == b"of an engine that died"
+    assert whole.read_bytes() == b"of one that closed"
+    assert soundfile.info(tmp_path / "take.3.wav").frames == len(outlet.everything)
 
 
 @pytest.mark.usefixtures("small_disk")
-def test_the_recording_sink_says_that_the_disk_is_full(tmp_path: Path) -> None:
-    sink = RecordingSink(tmp_path / "take.wav", RATE_HZ, 64, 32.0, 256)
-    with pytest.raises(DeviceError, match="the disk refused samples"):
-        for _ in range(2000):
-            sink.write(noise(256, 64))
+def test_a_recording_on_a_full_disk_stops_and_says_so(tmp_path: Path) -> None:
+    outlet = Collecting(64)
+    sink = RecordingSink(tmp_path / "take.wav", RATE_HZ, outlet, 256)
+    wait_for(lambda: sink.trouble is not None, "the disk to be full")
+    assert sink.trouble is not None
+    assert "the disk refused samples" in sink.trouble.what
+    sink._thread.join(5.0)
+    assert not sink._thread.is_alive()  # pulls no more
     with pytest.raises(DeviceError, match="the disk refused samples"):
         sink.close()
+    sink.close()  # says it once
     assert [p.name for p in tmp_path.iterdir()] == ["take.wav.part"]
 
 
-def test_a_slow_disk_stalls_nobody_until_the_queue_is_full(
-    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
+@pytest.fixture
+def stuck_disk(monkeypatch: pytest.MonkeyPatch) -> threading.Event:
+    """A disk that takes nothing until the event is set."""
     moving = threading.Event()
     write = Rf64Writer.write
 
@@ -127,19 +147,44 @@ def test_a_slow_disk_stalls_nobody_until_the_queue_is_full(
 
     monkeypatch.setattr(Rf64Writer, "write", stuck)
     monkeypatch.setattr(recording, "QUEUE_S", 0.05)
+    return moving
+
+
+def test_a_slow_disk_stalls_nobody_until_the_queue_is_full(
+    tmp_path: Path, stuck_disk: threading.Event, monkeypatch: pytest.MonkeyPatch
+) -> None:
     monkeypatch.setattr(recording, "CLOSE_S", 0.2)
-    path = tmp_path / "take.wav"
-    sink = RecordingSink(path, RATE_HZ, 4, 32.0, 256)
-    blocks = 0
-    with pytest.raises(DeviceError, match=r"more than 0\.05 s behind"):
-        for _ in range(200):
-            sink.write(noise(256, 4))
-            blocks += 1
-    assert blocks >= 37  # 0.05 s
+    path, outlet = tmp_path / "take.wav", Collecting(4)
+    sink = RecordingSink(path, RATE_HZ, outlet, 256)
+    wait_for(lambda: sink.trouble is not None, "the queue to be full")
+    assert sink.trouble is not None
+    assert "more than 0.05 s behind" in sink.trouble.what
+    # 0.05 s in the queue, one that the writer holds, and one that was refused
+    assert len(outlet.given) == round(0.05 * RATE_HZ / 256) + 2
     with pytest.raises(DeviceError, match="still behind"):
         sink.close()
     assert not path.exists()
-    moving.set()
-    sink._thread.join(5.0)
+    stuck_disk.set()
+    sink._writer.join(5.0)
     assert not path.exists()
-    assert soundfile.info(tmp_path / "take.wav.part").frames == blocks * 256
+    back, _rate = soundfile.read(tmp_path / "take.wav.part", dtype="float32", always_2d=True)
+    np.testing.assert_array_equal(back, outlet.everything[:-256])  # all but the refused one
+
+
+def test_what_is_owed_after_a_hold_up_is_not_held_against_the_disk(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(recording, "QUEUE_S", 0.1)
+
+    class Held(Collecting):
+        def pull(self, out: NDArray[np.float32], now_ns: int) -> None:
+            super().pull(out, now_ns)
+            if len(self.at_s) == 3:
+                time.sleep(0.5)  # five times what the queue holds
+
+    path, outlet = tmp_path / "take.wav", Held(2)
+    sink = RecordingSink(path, RATE_HZ, outlet, 256)
+    wait_for(lambda: outlet.callbacks > 700 or sink.trouble is not None, "0.9 s of samples")
+    sink.close()
+    back, _rate = soundfile.read(path, dtype="float32", always_2d=True)
+    np.testing.assert_array_equal(back, outlet.everything)

@@ -30,7 +30,6 @@ def render(
     """
     show = make_show(cells=grid(1, 1), q=q, carrier_hz=carrier_hz)
     renderer = Renderer(show, {"p": {"tone": programme}})
-    renderer.put(Record(0, "gate", args={"open": 1, "n": 3840}))
     renderer.put(Record(0, "law", "a", args={"law": law, "n": 0}))
     renderer.put(Record(0, "depth", "a", args={"depth": depth, "n": 0}))
     renderer.put(Record(0, "play", "a", args={"sound": "tone", "loop": True}))

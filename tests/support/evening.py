@@ -10,7 +10,7 @@ import numpy as np
 from support.rigs import grid, make_show, silence
 
 from beamctl.acoustics.geometry import direction
-from beamctl.engine.renderer import Renderer
+from beamctl.engine.chain import Chain
 from beamctl.show import events, glides
 from beamctl.show.player import Player
 from beamctl.show.records import SOUNDING, Record
@@ -65,7 +65,7 @@ class Evening:
         cues = [{"ref": str(n), "title": "chance", "act": self._acts(n)} for n in range(count)]
         show = make_show(("a", "b"), cues, cells)
         self.player = Player(show)
-        self.renderer = Renderer(show, {"p": {"tone": silence(1.0)}})
+        self.renderer = Chain(show, {"p": {"tone": silence(1.0)}}, ahead=0)
         self.tape = Tape()
         self._next = 0
         self.player.sink("sink-open", 0)
@@ -169,7 +169,7 @@ class Evening:
 
     def _where(self, sample: int) -> dict[str, np.ndarray]:
         """Points (3,) the beams make for now, as rendered."""
-        states = self.renderer.panels["p"].states
+        states = self.renderer.renderer.panels["p"].states
         return {b: _point(s, sample) for b, s in zip("ab", states, strict=True)}
 
     def _goal(self, beam: str) -> np.ndarray:

@@ -11,7 +11,9 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
-from support.running import COMMAND, need, wait_for
+from support.running import COMMAND, STARTS_S, need, wait_for
+
+from beamctl.desk import glyphs
 
 _numbers = itertools.count(1)
 MODES = (
@@ -41,7 +43,7 @@ class Terminal:
     def desk(self, show: Path, journal: Path, **env: str) -> Path:
         """Start a desk on the null sink; wait until it shows an output that is SHUT."""
         code = self.run(*COMMAND, "desk", show, "--journal", journal, **env)
-        wait_for(lambda: "SHUT" in self.screen() or code.exists(), "the desk to show SHUT", 180.0)
+        wait_for(lambda: self.reads("SHUT") or code.exists(), "the desk to show SHUT", STARTS_S)
         assert not code.exists(), self.screen()
         return code
 
@@ -54,6 +56,19 @@ class Terminal:
     def screen(self) -> str:
         """The text on the screen."""
         return self._tmux("capture-pane", "-p")
+
+    def reads(self, word: str) -> bool:
+        """True when the desk shows `word` in its big letters, of blocks or of ASCII."""
+        screen = self.screen().replace("\N{FULL BLOCK}", "#").splitlines()
+        letters = [row.rstrip() for row in glyphs.draw(word, "#")]
+        for top, line in enumerate(screen[: -glyphs.ROWS]):
+            at = line.find(letters[0])
+            while at >= 0:
+                rows = screen[top : top + glyphs.ROWS]
+                if all(r[at:].startswith(w) for r, w in zip(rows, letters, strict=True)):
+                    return True
+                at = line.find(letters[0], at + 1)
+        return False
 
     def type(self, text: str) -> None:
         """Send a text as it is."""

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import os
 import pty
+import re
 import signal
 import subprocess
-import time
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
@@ -46,33 +46,30 @@ def no_host_left(show: Path) -> Iterator[None]:
         stop_host(show)
 
 
-def press_star_enter(desk: Terminal, journal: Path, seen: int) -> None:
-    """The two keys that open the output; the journal has entered OPEN `seen` times then."""
-    readied = len(told(journal, "ready"))
+def press_star_enter(desk: Terminal, journal: Path, times: int) -> None:
+    """The two keys that open the output, for the `times`th time."""
     desk.type("*")
-    wait_for(lambda: len(told(journal, "ready")) > readied, "ready in the journal")
-    wait_for(lambda: "Enter" in desk.screen(), "the desk to ask for Enter")
-    time.sleep(0.15)  # until the picture that the desk judges by tells that * was pressed
+    wait_for(lambda: "READY: Enter" in desk.screen(), "the desk to ask for Enter")
     desk.enter()
-    wait_for(lambda: outputs(journal).count("OPEN") == seen, "OPEN in the journal")
+    wait_for(lambda: outputs(journal).count("OPEN") == times, "OPEN in the journal")
+    wait_for(lambda: desk.reads("OPEN"), "the desk to show OPEN")
 
 
-def press_go(desk: Terminal, journal: Path, show: Path, ref: str) -> None:
-    """Enter, once the stand-by has come to `ref`."""
-    link = Link(show)
-    wait_for(lambda: link.snapshot().standby == ref, f"cue {ref} standing by")
-    link.close()
-    time.sleep(0.15)  # until the desk has drawn it too
+def press_go(desk: Terminal, journal: Path, ref: str) -> None:
+    """Enter, once the desk shows that `ref` stands by."""
+    stands_by = re.compile(rf"stand by {re.escape(ref)}\s")
+    wait_for(lambda: stands_by.search(desk.screen()) is not None, f"cue {ref} standing by")
     desk.enter()
     wait_for(lambda: ref in fired(journal), f"cue {ref} in the journal")
 
 
 def leave(desk: Terminal, code: Path, presses: int) -> None:
     """Ctrl-Q as often as the desk asks for; it must end with 0."""
-    for _ in range(presses):
+    desk.key("C-q")
+    if presses == 2:
+        wait_for(lambda: "again within" in desk.screen(), "the desk to ask once more")
         assert not code.exists()
         desk.key("C-q")
-        time.sleep(0.2)
     wait_for(lambda: code.exists() and code.read_text() != "", "the desk to end")
     assert code.read_text() == "0\n", desk.screen()
 
@@ -84,15 +81,14 @@ def test_night_tram_from_the_keyboard(tmp_path: Path) -> None:
         code = desk.desk(NIGHT_TRAM, journal)
         press_star_enter(desk, journal, 1)
         for ref in ("1", "2", "3", "4", "4.5", "5"):
-            press_go(desk, journal, NIGHT_TRAM, ref)
+            press_go(desk, journal, ref)
         wait_for(lambda: "6" in fired(journal), "cue 6, which follows by itself")
         for ref in ("6A", "7"):
-            press_go(desk, journal, NIGHT_TRAM, ref)
+            press_go(desk, journal, ref)
         desk.type("0")
         wait_for(lambda: outputs(journal)[-1] == "HUSHED", "HUSHED in the journal")
+        wait_for(lambda: desk.reads("HUSHED"), "the desk to show HUSHED")
         press_star_enter(desk, journal, 2)
-        wait_for(lambda: "OPEN" in desk.screen(), "the desk to show OPEN")
-        time.sleep(0.15)
         leave(desk, code, presses=2)
         wait_for(lambda: "runs on" in desk.screen(), "the shell to say that the host runs on")
         assert desk.modes() == before
@@ -128,10 +124,10 @@ def test_a_plain_terminal_does(tmp_path: Path, env: dict[str, str]) -> None:
         before = desk.modes()
         code = desk.desk(show, journal, **env)
         press_star_enter(desk, journal, 1)
-        press_go(desk, journal, show, "1")
+        press_go(desk, journal, "1")
         desk.type("0")
         wait_for(lambda: outputs(journal)[-1] == "HUSHED", "HUSHED in the journal")
-        wait_for(lambda: "HUSHED" in desk.screen(), "the desk to show HUSHED")
+        wait_for(lambda: desk.reads("HUSHED"), "the desk to show HUSHED")
         leave(desk, code, presses=1)
         assert desk.modes() == before
         stop_host(show)
