@@ -1,7 +1,7 @@
 """Renderer, ring and final stage in one process without a clock: what `render` and `replay` run.
 
-The same code as live, in the same order. What a device decides live (when the gate opened, closed or
-the ring ran dry) comes here as records, each taken in exactly at its frame.
+The same code as live, in the same order. What a device decides live (when the gate opened or shut,
+when the ring ran dry) comes here as records, each taken in exactly at its frame.
 """
 
 from __future__ import annotations

@@ -34,8 +34,8 @@ def cache_folder() -> Path:
 
 numba.config.CACHE_DIR = str(cache_folder())  # type: ignore[attr-defined]
 
-# No contraction into fused multiply-adds: whether the compiler fuses depends on the loop it is in, and
-# the samples would depend on where a block ends.
+# No contraction into fused multiply-adds: whether the compiler fuses depends on the loop it is in,
+# and the samples would depend on where a block ends.
 KEPT = True  # on disk
 compiled = numba.njit(cache=KEPT, nogil=True, error_model="numpy")
 

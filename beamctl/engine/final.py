@@ -22,9 +22,7 @@ from beamctl.engine.compiled import compiled
 from beamctl.show.glides import is_settled, scalar_at, take_over
 
 MAGNITUDE = np.int32(0x7FFFFFFF)  # a float32's bits without its sign
-BROKEN = np.int32(
-    0x41800000
-)  # the bits of 16: no programme is 24 dB over full scale, or not a number
+BROKEN = np.int32(0x41800000)  # the bits of 16: from 24 dB over full scale nothing is a sample
 JUST_UNDER = 1.0 - 5e-7  # so that rounding to float32 never passes the limit
 RELEASE = 0.997  # of a held peak, per chunk: 6 dB in 77 ms at 192 kHz
 

@@ -1,8 +1,8 @@
 """Compiled: a fused multiply-add that is always fused, or never.
 
-Left to itself the compiler fuses in some loops and not in others, and a sample would depend on where
-a block ends. Asked for by name it is one rounding everywhere. On a processor without the instruction
-it would be a slow library call, so there it is a plain product and sum.
+Left to itself the compiler fuses in some loops and not in others, and a sample would depend on
+where a block ends. Asked for by name it is one rounding everywhere. On a processor without the
+instruction it would be a slow library call, so there it is a plain product and sum.
 """
 
 from __future__ import annotations

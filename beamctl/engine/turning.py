@@ -1,8 +1,9 @@
 """Compiled: cosine and sine of a phase given in turns, in a form the compiler can widen.
 
 The library's own cosine and sine cost about 10 ns each and cannot run side by side in one wide
-register. Here the turn is brought to |x| <= 1/2 and the half angle πx is taken by its Taylor series
-to x¹⁵, whose rest is (π/2)¹⁶/16! = 7e-11, then doubled: cos 2a = 1 - 2 sin² a, sin 2a = 2 sin a cos a.
+register. Here the turn is brought to |x| <= 1/2 and the half angle πx is taken by its Taylor
+series to x¹⁵, whose rest is (π/2)¹⁶/16! = 7e-11, then doubled: cos 2a = 1 - 2 sin² a,
+sin 2a = 2 sin a cos a.
 """
 
 from __future__ import annotations

@@ -202,7 +202,7 @@ class Host:
         return self._now() + SLACK_QUANTA * self.show.rig.quantum
 
     def _send(self, records: list[Record]) -> None:
-        """Hand records to the engine; those of the final stage are asked of it, not of the engine."""
+        """Hand records to the engine; the gate is asked of the final stage directly."""
         outlet = self._keeper.outlet
         for record in records:
             if record.what == "gate" and outlet is not None:

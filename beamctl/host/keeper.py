@@ -54,7 +54,7 @@ class Keeper:
         self._line: Connection | None = None
         self._generation = 0
 
-    # -- one engine ---------------------------------------------------------------------------------
+    # -- one engine ------------------------------------------------------------------------------
 
     def start(self) -> None:
         """Start an engine whose first frame follows the last one's."""
@@ -112,7 +112,7 @@ class Keeper:
         """Process number of the engine."""
         return int(self._process.pid)
 
-    # -- watching ------------------------------------------------------------------------------------
+    # -- watching --------------------------------------------------------------------------------
 
     def watch(self) -> bool:
         """Kill an engine that stalls; True when it was killed now."""
@@ -160,7 +160,7 @@ class Keeper:
             )
         return None
 
-    # -- the end ---------------------------------------------------------------------------------------
+    # -- the end ---------------------------------------------------------------------------------
 
     def alive(self) -> bool:
         """True while the engine's process runs."""

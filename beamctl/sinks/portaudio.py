@@ -98,7 +98,16 @@ def open_callback(
 
 
 def open_blocking(device: Device, rate_hz: int, channels: int, latency_s: float) -> Any:
-    """Start a stream for blocking writes, PortAudio buffering `latency_s`; return the stream."""
+    """Start a stream for blocking writes, PortAudio buffering `latency_s`; return the stream.
+
+    Raises DeviceError under JACK for other than two channels: pa_jack.c counts two, and plays what
+    lies behind the samples instead of the rest (PortAudio issue #81).
+    """
+    if device.info.host_api == _JACK and channels != 2:
+        raise DeviceError(
+            f"{device.info.name} asks for no samples, and {channels} channels cannot be written",
+            "start the JACK server anew, then open it again",
+        )
     with translated(device.info.name):
         stream = _library().OutputStream(
             latency=latency_s, dither_off=True, **_settings(device, rate_hz, channels)

@@ -121,12 +121,12 @@ def kernel_of(panel: Panel) -> Callable[[], None]:
 
 
 def numpy_ways(panel: Panel) -> dict[str, Callable[[], object]]:
-    """The same sum in NumPy, for beams that stand still, from the same envelope at the same accuracy.
+    """The same sum in NumPy, for beams that stand still, from the same envelope, as accurate.
 
-    shift matrix   every feed's interpolation taps and phasors in one matrix, times the envelopes at
-                   every whole-sample delay: one product, everything about the aim worked out before
-    gathered rows  the 16 fractional rows by a small product, two of them gathered per feed and beam,
-                   then one batched product with the weights of both
+    shift matrix   every feed's interpolation taps and phasors in one matrix, times the envelopes
+                   at every whole-sample delay: one product, all about the aim worked out before
+    gathered rows  the 16 fractional rows by a small product, two of them gathered per feed and
+                   beam, then one batched product with the weights of both
     """
     b, taps = panel.buffers, panel.wiring.row_taps
     beams, feeds = len(panel.states), b.out.shape[0]

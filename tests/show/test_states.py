@@ -46,6 +46,7 @@ DEEDS: dict[str, Callable[[Player], bool]] = {
     "sink-open": sink("sink-open"),
     "sink-lost": sink("sink-lost"),
     "sink-close": sink("sink-close"),
+    "lease-over": sink("lease-over"),
 }
 
 
@@ -176,7 +177,7 @@ TABLES = {
 def test_a_table_shows_every_entry_and_every_refusal() -> None:
     shown = TABLES["output states"]
     assert shown.count("–") == len(OUTPUTS) * len({e for _, e in OUTPUT}) - len(OUTPUT)
-    assert "| HUSHED | – | – | HUSHED | OPEN | – | LOST | COLD |" in shown
+    assert "| HUSHED | – | – | HUSHED | – | OPEN | – | LOST | COLD |" in shown
 
 
 @pytest.mark.parametrize("name", TABLES)

@@ -26,10 +26,10 @@ RING_MS = 32.0
 
 
 @contextmanager
-def player(server: JackServer, *options: str) -> Iterator[subprocess.Popen[str]]:
+def player(server: JackServer, feeds: int, *options: str) -> Iterator[subprocess.Popen[str]]:
     """The count signal playing from another process."""
     with subprocess.Popen(
-        [sys.executable, jackplayer.__file__, str(FEEDS), str(RING_MS), *options],
+        [sys.executable, jackplayer.__file__, str(feeds), str(RING_MS), *options],
         env=server.env,
         stdin=subprocess.PIPE,
         stdout=subprocess.PIPE,
@@ -59,13 +59,18 @@ def longest_run(frames: np.ndarray) -> int:
 
 
 @pytest.mark.parametrize(
-    ("options", "route", "period"),
-    [([], "compiled callback", PERIOD), (["deaf"], "blocking writes", QUANTUM)],
+    ("feeds", "options", "route", "period"),
+    [(FEEDS, [], "compiled callback", PERIOD), (2, ["deaf"], "blocking writes", QUANTUM)],
 )
-def test_64_feeds_arrive_sample_for_sample(options: list[str], route: str, period: int) -> None:
-    with jack_server(RATE_HZ, PERIOD, 2, FEEDS) as server, player(server, *options) as process:
+def test_feeds_arrive_sample_for_sample(
+    feeds: int, options: list[str], route: str, period: int
+) -> None:
+    with (
+        jack_server(RATE_HZ, PERIOD, 2, feeds) as server,
+        player(server, feeds, *options) as process,
+    ):
         assert line(process) == {"route": route, "period": period}
-        wait_for(lambda: len(ports(server, "PortAudio:out_")) == FEEDS, "the sink's ports")
+        wait_for(lambda: len(ports(server, "PortAudio:out_")) == feeds, "the sink's ports")
         recorded = capture_ports(server, ports(server, "PortAudio:out_"), 1.0)
         assert process.stdin is not None
         process.stdin.close()
@@ -73,11 +78,11 @@ def test_64_feeds_arrive_sample_for_sample(options: list[str], route: str, perio
         assert process.wait(10.0) == 0
     print(report)
 
-    assert recorded.shape[1] == FEEDS
+    assert recorded.shape[1] == feeds
     sounding = recorded[np.any(recorded != 0.0, axis=1)]
     frames = frame_of(sounding[:, 0])
     # Dry spells and lost periods may cut the stream on a busy machine, but never alter a frame.
-    np.testing.assert_array_equal(sounding, count_signal(frames, FEEDS))
+    np.testing.assert_array_equal(sounding, count_signal(frames, feeds))
     assert longest_run(frames) >= RATE_HZ // 10
     assert (report["lost"], report["trouble"], report["faults"]) == (False, "", 0)
     assert report["close_s"] < 2.0
@@ -86,11 +91,14 @@ def test_64_feeds_arrive_sample_for_sample(options: list[str], route: str, perio
 
 
 @pytest.mark.parametrize("how", [signal.SIGSTOP, signal.SIGTERM])
-@pytest.mark.parametrize("options", [[], ["deaf"]])
+@pytest.mark.parametrize(("feeds", "options"), [(FEEDS, []), (2, ["deaf"])])
 def test_when_the_server_is_lost_the_callbacks_stop_and_the_process_can_leave(
-    how: signal.Signals, options: list[str]
+    how: signal.Signals, feeds: int, options: list[str]
 ) -> None:
-    with jack_server(RATE_HZ, PERIOD, 2, FEEDS) as server, player(server, *options) as process:
+    with (
+        jack_server(RATE_HZ, PERIOD, 2, feeds) as server,
+        player(server, feeds, *options) as process,
+    ):
         line(process)
         began_s = time.monotonic()
         server.process.send_signal(how)
@@ -101,6 +109,11 @@ def test_when_the_server_is_lost_the_callbacks_stop_and_the_process_can_leave(
     assert report["lost"] or report["trouble"]
     assert jackplayer.LOST_S - 0.1 <= noticed_s < 1.0
     assert report["close_s"] < 0.1
+
+
+def test_a_device_that_neither_asks_nor_can_be_written_is_refused() -> None:
+    with jack_server(RATE_HZ, PERIOD, 2, 3) as server, player(server, 3, "deaf") as process:
+        assert process.wait(30.0) == 1
 
 
 @pytest.mark.parametrize(

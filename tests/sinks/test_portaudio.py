@@ -289,6 +289,22 @@ def test_without_callbacks_a_thread_writes_and_the_sink_says_so(offer: Any) -> N
     assert len(stream.taken) == written
 
 
+@pytest.mark.parametrize(("channels", "written"), [(1, False), (2, True), (64, False)])
+def test_under_jack_only_two_channels_can_be_written(
+    offer: Any, channels: int, written: bool
+) -> None:
+    library = offer(("system", "JACK Audio Connection Kit", 64))
+    if written:
+        sink = open_sink("system", RATE_HZ, Collecting(channels), ADDRESS, 256)
+        assert sink.route == "blocking writes"
+        sink.close()
+    else:
+        with pytest.raises(DeviceError, match=f"{channels} channels cannot be written"):
+            open_sink("system", RATE_HZ, Collecting(channels), ADDRESS, 256)
+    assert len(library.streams) == 1 + written
+    assert not portaudio._open
+
+
 def test_a_sounddevice_without_callbacks_by_address_is_written_to(offer: Any) -> None:
     library, outlet = offer(("card", "ASIO", 2)), Collecting(2)
 
