@@ -29,7 +29,7 @@ from beamctl.host.places import memory_folder, show_key, state_folder
 from beamctl.host.status import Status
 from beamctl.show.show import Show
 
-STALL_S = 0.15  # without a beat of the render thread: then the process is killed
+STALL_S = 0.12  # without a beat of the render thread: then the process is killed
 DEATHS, DEATHS_S = 3, 60.0
 LOOK_S = 2.0
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import dataclasses
 import json
 from multiprocessing.connection import Client, Connection
@@ -49,8 +50,9 @@ class Link:
         return Answer(**self._ask({"do": "act", "name": name, "arguments": arguments}))
 
     def stop_host(self) -> None:
-        """Ask the host to close the sink and end."""
-        self._ask({"do": "stop"})
+        """Ask the host to close the sink and end; it may be gone before it answers."""
+        with contextlib.suppress(EOFError, ConnectionError):
+            self._ask({"do": "stop"})
 
     def close(self) -> None:
         """Let go of the host; changes no sound."""

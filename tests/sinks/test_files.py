@@ -11,6 +11,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 import soundfile
+from jackplayer import Player, count_signal, open_gate
 from numpy.typing import NDArray
 from support.collecting import Collecting
 from support.running import wait_for
@@ -104,6 +105,18 @@ def test_a_recording_holds_what_was_pulled(tmp_path: Path) -> None:
     back, _rate = soundfile.read(path, dtype="float32", always_2d=True)
     np.testing.assert_array_equal(back.view(np.uint32), outlet.everything.view(np.uint32))
     assert sink.digest == hashlib.sha256(back.tobytes()).hexdigest()
+
+
+def test_a_recording_through_the_real_outlet_holds_every_frame_in_its_place(tmp_path: Path) -> None:
+    outlet = open_gate(RATE_HZ, 4)  # a ring of a second, full
+    Player(outlet, 4)
+    sink = open_sink(f"file:{tmp_path / 'take.wav'}", RATE_HZ, outlet, 0, 256)
+    wait_for(lambda: outlet.callbacks >= 100, "some pulls")
+    sink.close()
+    back, _rate = soundfile.read(tmp_path / "take.wav", dtype="float32", always_2d=True)
+    assert len(back) == 256 * outlet.callbacks <= RATE_HZ
+    np.testing.assert_array_equal(back[0], 0.0)  # the gate's ramp of one frame
+    np.testing.assert_array_equal(back[1:], count_signal(np.arange(1, len(back)), 4))
 
 
 def test_a_recording_is_never_overwritten(tmp_path: Path) -> None:

@@ -112,8 +112,17 @@ def test_when_the_server_is_lost_the_callbacks_stop_and_the_process_can_leave(
 
 
 def test_a_device_that_neither_asks_nor_can_be_written_is_refused() -> None:
-    with jack_server(RATE_HZ, PERIOD, 2, 3) as server, player(server, 3, "deaf") as process:
-        assert process.wait(30.0) == 1
+    with jack_server(RATE_HZ, PERIOD, 2, 3) as server:
+        done = subprocess.run(
+            [sys.executable, jackplayer.__file__, "3", str(RING_MS), "deaf"],
+            env=server.env,
+            stdin=subprocess.DEVNULL,
+            capture_output=True,
+            text=True,
+            timeout=60.0,
+        )
+    assert done.returncode == 1
+    assert "DeviceError: system asks for no samples, and 3 channels cannot be" in done.stderr
 
 
 @pytest.mark.parametrize(
