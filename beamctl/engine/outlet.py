@@ -59,8 +59,13 @@ class Outlet:
     ) -> Outlet:
         """A fresh outlet, gate closed and nothing granted, in a file or in this process alone.
 
-        Its first frame is number `start`, a multiple of layout.CHUNK.
+        Its first frame is number `start`, a multiple of layout.CHUNK. ValueError when a panel's
+        feeds are not all among the channels, or there are too many panels.
         """
+        if len(panels) > at.MAX_PANELS or any(
+            not 0 <= wire.first <= wire.first + wire.feeds <= channels for wire in panels
+        ):
+            raise ValueError(f"{len(panels)} panels do not fit {channels} channels")
         frames = max(frames, at.LOOKAHEAD + 2 * at.CHUNK)
         frames = min(frames, at.CHUNK * (at.DEMANDS_KEPT - 2 * at.HOLD))
         size = at.words_needed(frames, channels)
