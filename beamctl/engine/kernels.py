@@ -22,7 +22,8 @@ from beamctl.show.glides import reach_at, travel_at
 
 ROWS = 16
 ROW_TAPS = 6
-RUN = 32  # samples; runs between rows end on multiples of it, which the compiler can widen
+SLACK = 0.25  # by which a weight may leave 0 to 1 before the next pair of rows takes over
+RUN = 32  # samples; where that costs little, runs end on multiples of it: full wide registers
 ROW_DELAY = 2  # whole samples that the middle of the six taps adds to every row
 
 _path_lead_m = jitable(path_lead_m)
@@ -61,11 +62,15 @@ def fill_rows(rows, base, taps, row_at, base_at, count):
 
 
 @compiled
-def aim_feeds(coef, delay, cells, wanted, feed, share, scratch, aim_row, reach_row, start, span, k):
+def aim_feeds(
+    coef, edge, known, cells, wanted, feed, share, scratch, aim_row, reach_row, start, span, k
+):
     """Phasor parabola and row delay of every feed of one beam, from `start` over `span` samples.
 
-    coef     (F, 6) float64: real and imaginary part of c0, c1, c2; phasor(x) = c0 + c1 x + c2 x²
-    delay    (F, 3) float64: delay in sixteenths of a sample, d0 + d1 x + d2 x²
+    coef     (9, F) float64: phasor(x) = (c0 + j s0) + (c1 + j s1) x + (c2 + j s2) x² and delay(x) =
+             d0 + d1 x + d2 x² in sixteenths of a sample, as c0 s0 d0 c1 s1 d1 c2 s2 d2
+    edge     (3, F): phasor and row delay at the span's end, left here; where `known`, those of
+             the span before are found here, which are what this one starts with
     cells    (4, N): right, out, up and squared distance from the centre, metres
     wanted   (2, N): real and imaginary part of what undoes polarity, phase and trim, times share
     feed     (N,) feed of each cell; share (N,) 1 / live cells of its feed, 0 for a dead cell
@@ -74,21 +79,27 @@ def aim_feeds(coef, delay, cells, wanted, feed, share, scratch, aim_row, reach_r
     """
     carrier_hz, slowness, base_s, per_s = k
     coef[:] = 0.0
-    delay[:] = 0.0
-    for step in range(3):
+    if known:
+        coef[0:3] = edge
+    for step in range(1 if known else 0, 3):
         sample = start + 0.5 * step * span
         x, y, z, distance = travel_at(aim_row, sample)
         per_m = reach_at(reach_row, sample, distance)
         _cell_phasors(scratch, cells, wanted, x, y, z, per_m, carrier_hz, slowness, base_s)
+        c, s, d = coef[3 * step], coef[3 * step + 1], coef[3 * step + 2]
         for n in range(feed.shape[0]):
             f = feed[n]
-            coef[f, 2 * step] += scratch[0, n]
-            coef[f, 2 * step + 1] += scratch[1, n]
-            delay[f, step] += share[n] * scratch[2, n] * per_s
-    for f in range(coef.shape[0]):
-        for q in range(2):
-            _to_parabola(coef[f, q::2], span)
-        _to_parabola(delay[f], span)
+            c[f] += scratch[0, n]
+            s[f] += scratch[1, n]
+            d[f] += share[n] * scratch[2, n] * per_s
+    edge[:] = coef[6:9]
+    per = 1.0 / span
+    for q in range(3):
+        p0, p1, p2 = coef[q], coef[3 + q], coef[6 + q]
+        for f in range(p0.shape[0]):
+            a, b, c = p0[f], p1[f], p2[f]
+            p1[f] = (4.0 * b - 3.0 * a - c) * per
+            p2[f] = 2.0 * (a - 2.0 * b + c) * (per * per)
 
 
 @compiled
@@ -107,86 +118,88 @@ def _cell_phasors(scratch, cells, wanted, x, y, z, per_m, carrier_hz, slowness, 
 
 
 @compiled
-def _to_parabola(p, span):
-    """Values at 0, span / 2 and span, in place, to the coefficients of 1, x and x²."""
-    p0, p1, p2 = p[0], p[1], p[2]
-    p[1] = (-3.0 * p0 + 4.0 * p1 - p2) / span
-    p[2] = 2.0 * (p0 - 2.0 * p1 + p2) / (span * span)
+def sum_feeds(out, acc, carrier, rows, coef, active, pieces, ramp, row_at, begin, end):
+    """Every feed of a panel for positions begin <= p < end: sum its beams, and meet the carrier.
 
-
-@compiled
-def add_beam(acc, rows, coef, delay, ramp, row_at, piece, begin, end, segment):
-    """Add one beam to the in-phase and quadrature sums of every feed, for begin <= p < end.
-
-    acc    (2, F, segment) float32
-    rows   (16, 2, …) float32, rows[:, :, row_at + p] belonging to position p of the segment
-    piece  position at which `coef` and `delay` of aim_feeds start; they hold to the segment's end
-    ramp   (segment,) float32: 0, 1, 2 …
+    out      (F, segment) float32
+    acc      (2, segment) float32: one feed's in-phase and quadrature sum, which stays in the cache
+    carrier  (2, segment) float32 as fill_carrier leaves it
+    rows     (B, 16, 2, …) float32, rows[:, :, :, row_at + p] belonging to position p
+    coef     (B, 9, F) as aim_feeds leaves it; active (B,): beams that are not passed over
+    pieces   (B,) position at which a beam's coef starts; it holds to the segment's end
+    ramp     (segment,) float32: 0, 1, 2 …
     """
-    for f in range(coef.shape[0]):
-        d0, d2 = delay[f, 0], delay[f, 2]
-        d1 = delay[f, 1] + d2 * (segment - piece)  # of the chord, which picks the rows
-        step = RUN if abs(d1) * RUN < 0.25 else 1
-        x = 0
-        while x < segment - piece:
-            row = floor(d0 + d1 * x)
-            stop = segment - piece
-            if d1 > 0.0:
-                stop = min(stop, ceil((row + 1 - d0) / d1))
-            elif d1 < 0.0:
-                stop = min(stop, floor((row - d0) / d1) + 1)
-            # on to a full wide register, even if the weight leaves 0 to 1 by a little there
-            stop = max(stop, x + 1) + piece
-            stop = min((stop + step - 1) & -step, segment) - piece
-            low, high = max(x, begin - piece), min(stop, end - piece)
-            if low < high:
-                n = high - low
-                at = row_at + piece + low
-                ra, rb = row & 15, (row + 1) & 15
-                sa, sb = at - (row >> 4), at - ((row + 1) >> 4)
-                _add_run(
-                    acc[0, f, piece + low : piece + high],
-                    acc[1, f, piece + low : piece + high],
-                    rows[ra, 0, sa : sa + n],
-                    rows[ra, 1, sa : sa + n],
-                    rows[rb, 0, sb : sb + n],
-                    rows[rb, 1, sb : sb + n],
-                    ramp[low - x : high - x],
-                    np.float32(d0 + x * (delay[f, 1] + x * d2) - row),
-                    np.float32(delay[f, 1] + 2.0 * x * d2),
-                    np.float32(d2),
-                    np.float32(coef[f, 0] + x * (coef[f, 2] + x * coef[f, 4])),
-                    np.float32(coef[f, 1] + x * (coef[f, 3] + x * coef[f, 5])),
-                    np.float32(coef[f, 2] + 2.0 * x * coef[f, 4]),
-                    np.float32(coef[f, 3] + 2.0 * x * coef[f, 5]),
-                    np.float32(coef[f, 4]),
-                    np.float32(coef[f, 5]),
-                )
-            x = stop
+    cosine, sine = carrier[0, begin:end], carrier[1, begin:end]
+    in_phase, quadrature = acc[0, begin:end], acc[1, begin:end]
+    for f in range(out.shape[0]):
+        in_phase[:] = 0.0
+        quadrature[:] = 0.0
+        for b in range(active.shape[0]):
+            if active[b]:
+                _add_beam(acc, rows[b], coef[b], f, ramp, row_at, pieces[b], begin, end)
+        feed = out[f, begin:end]
+        for p in range(end - begin):
+            feed[p] = fma(in_phase[p], cosine[p], -quadrature[p] * sine[p])
 
 
 @compiled
-def _add_run(out_i, out_q, a_i, a_q, b_i, b_q, ramp, w0, w1, w2, c0, s0, c1, s1, c2, s2):
+def _add_beam(acc, rows, coef, f, ramp, row_at, piece, begin, end):
+    """Add one beam to the sums of feed f."""
+    segment = ramp.shape[0]
+    length = segment - piece
+    # the delay's parabola by its chord, moved half-way to the bulge
+    d1 = coef[5, f] + coef[8, f] * length
+    d0 = coef[2, f] - 0.125 * coef[8, f] * length * length
+    step = RUN
+    while step > 1 and abs(d1) * step > 0.5 * SLACK:
+        step //= 2
+    x = 0
+    while x < length:
+        row = floor(d0 + d1 * x)
+        stop = length
+        reached = d0 + d1 * length
+        if reached > row + 1.0 + SLACK or reached < row - SLACK:
+            edge = row + 1.0 + SLACK if d1 > 0.0 else row - SLACK
+            stop = min(length, max(x + 1, ceil((edge - d0) / d1))) + piece
+            stop = min((stop + step - 1) & -step, segment) - piece
+        low, high = max(x, begin - piece), min(stop, end - piece)
+        if low < high:
+            n = high - low
+            at = row_at + piece + low
+            sa, sb = at - (row >> 4), at - ((row + 1) >> 4)
+            near, far = rows[row & 15], rows[(row + 1) & 15]
+            _add_run(
+                acc[0, piece + low : piece + high],
+                acc[1, piece + low : piece + high],
+                near[0, sa : sa + n],
+                near[1, sa : sa + n],
+                far[0, sb : sb + n],
+                far[1, sb : sb + n],
+                ramp[low - x : high - x],
+                np.float32(d0 + d1 * x - row),
+                np.float32(d1),
+                np.float32(coef[0, f] + x * (coef[3, f] + x * coef[6, f])),
+                np.float32(coef[1, f] + x * (coef[4, f] + x * coef[7, f])),
+                np.float32(coef[3, f] + 2.0 * x * coef[6, f]),
+                np.float32(coef[4, f] + 2.0 * x * coef[7, f]),
+                np.float32(coef[6, f]),
+                np.float32(coef[7, f]),
+            )
+        x = stop
+
+
+@compiled
+def _add_run(out_i, out_q, a_i, a_q, b_i, b_q, ramp, w0, w1, c0, s0, c1, s1, c2, s2):
     """One run of samples between the same two rows; everything float32 and contiguous."""
     for i in range(out_i.shape[0]):
         t = ramp[i]
-        w = fma(t, fma(t, w2, w1), w0)
+        w = fma(t, w1, w0)
         e_i = fma(w, b_i[i] - a_i[i], a_i[i])
         e_q = fma(w, b_q[i] - a_q[i], a_q[i])
         c = fma(t, fma(t, c2, c1), c0)
         s = fma(t, fma(t, s2, s1), s0)
         out_i[i] = fma(e_i, c, fma(-e_q, s, out_i[i]))
         out_q[i] = fma(e_i, s, fma(e_q, c, out_q[i]))
-
-
-@compiled
-def meet_carrier(out, acc, carrier, begin, end):
-    """out (F, segment) = Re of (acc[0] + j acc[1]) × carrier (2, segment), for begin <= p < end."""
-    cosine, sine = carrier[0, begin:end], carrier[1, begin:end]
-    for f in range(out.shape[0]):
-        feed, in_phase, quadrature = out[f, begin:end], acc[0, f, begin:end], acc[1, f, begin:end]
-        for p in range(end - begin):
-            feed[p] = fma(in_phase[p], cosine[p], -quadrature[p] * sine[p])
 
 
 @compiled

@@ -41,19 +41,20 @@ class Buffers(NamedTuple):
     peaks: NDArray[np.float64]
     held: NDArray[np.float64]
     demands: NDArray[np.float64]
-    coef: NDArray[np.float64]  # (B, F, 6) phasor parabolas
-    delay: NDArray[np.float64]  # (B, F, 3) parabolas of the row delays
+    coef: NDArray[np.float64]  # (B, 9, F) parabolas of phasors and row delays
+    edge: NDArray[np.float64]  # (B, 3, F) phasor and row delay at the segment's end
+    known: NDArray[np.bool_]  # (B,) edge is what the aim gives at the next segment's start
     level: NDArray[np.float64]  # (B, 6) rows of glides, and so on below
     depth: NDArray[np.float64]
     reach: NDArray[np.float64]
     aim: NDArray[np.float64]
     law: NDArray[np.float64]  # (B, 4, 6)
     active: NDArray[np.bool_]  # (B,) False: silent long enough to be skipped
-    stale: NDArray[np.bool_]  # (B,) coef and delay must be made anew from `piece`
-    still: NDArray[np.bool_]  # (B,) coef and delay hold until the aim is touched
-    piece: NDArray[np.int64]  # (B,) position in the segment from which coef and delay count
+    stale: NDArray[np.bool_]  # (B,) coef must be made anew from `piece`
+    still: NDArray[np.bool_]  # (B,) coef hold until the aim is touched
+    piece: NDArray[np.int64]  # (B,) position in the segment from which coef count
     scratch: NDArray[np.float64]  # (3, N)
-    acc: F32  # (2, F, 256)
+    acc: F32  # (2, 256) one feed's sums
     total: F32  # (256,) summed demands, then the shared gain
     carrier: F32  # (2, 256)
     out: F32  # (F, 256) feed samples
@@ -117,6 +118,7 @@ class Panel:
         """The aim or reach of `beam` changed at this position of the segment."""
         self.buffers.stale[beam] = True
         self.buffers.still[beam] = False
+        self.buffers.known[beam] = False
         self.buffers.piece[beam] = position
 
     def wake(self, beam: int) -> None:
@@ -168,6 +170,7 @@ class Panel:
         self._awake.discard(b)
         buffers.stale[b] = True
         buffers.still[b] = False
+        buffers.known[b] = False
         buffers.piece[b] = 0
 
 
@@ -185,7 +188,7 @@ def _wiring(spec: PanelSpec, cells: CellMap, air: Air, rate_hz: int) -> Wiring:
         raise_taps=np.ascontiguousarray(interpolation_fir(), np.float32),
         row_taps=kernels.row_taps(),
         ramp=np.arange(SEGMENT, dtype=np.float32),
-        cells=np.vstack([cells.at_m.T, np.sum(cells.at_m**2, axis=1)]),
+        cells=np.ascontiguousarray(np.vstack([cells.at_m.T, np.sum(cells.at_m**2, axis=1)])),
         wanted=np.vstack([wanted.real, wanted.imag]),
         feed=np.ascontiguousarray(cells.feed, np.int64),
         share=share,
@@ -219,8 +222,9 @@ def _buffers(wiring: Wiring, feeds: int, rate_hz: int, beams: int) -> Buffers:
         peaks=np.zeros((beams, chunks)),
         held=np.zeros((beams, sharing.SMOOTH)),
         demands=np.zeros((beams, 2)),
-        coef=np.zeros((beams, feeds, 6)),
-        delay=np.zeros((beams, feeds, 3)),
+        coef=np.zeros((beams, 9, feeds)),
+        edge=np.zeros((beams, 3, feeds)),
+        known=np.zeros(beams, np.bool_),
         level=np.zeros((beams, glides.SCALAR_SIZE)),
         depth=np.zeros((beams, glides.SCALAR_SIZE)),
         reach=np.zeros((beams, glides.REACH_SIZE)),
@@ -231,7 +235,7 @@ def _buffers(wiring: Wiring, feeds: int, rate_hz: int, beams: int) -> Buffers:
         still=np.zeros(beams, np.bool_),
         piece=np.zeros(beams, np.int64),
         scratch=np.zeros((3, wiring.cells.shape[1])),
-        acc=f32(2, feeds, SEGMENT),
+        acc=f32(2, SEGMENT),
         total=np.ones(SEGMENT, np.float32),
         carrier=f32(2, SEGMENT),
         out=f32(feeds, SEGMENT),
@@ -273,14 +277,13 @@ def _shift_row(row, n):
 @compiled
 def advance(buffers, wiring, sample, begin, end):
     """All beams of a panel over positions begin … end of the segment that starts at `sample`."""
-    acc, total = buffers.acc, buffers.total
-    acc[:, :, begin:end] = 0.0
+    total = buffers.total
     total[begin:end] = 0.0
+    row_at = buffers.rows.shape[3] - SEGMENT
     for b in range(buffers.active.shape[0]):
         if buffers.active[b]:
             _make_base(buffers, wiring, b, sample, begin, end)
             _aim(buffers, wiring, b, sample)
-            row_at = buffers.rows.shape[3] - SEGMENT
             kernels.fill_rows(
                 buffers.rows[b],
                 buffers.base[b],
@@ -289,23 +292,23 @@ def advance(buffers, wiring, sample, begin, end):
                 kernels.ROW_TAPS - 1 + begin,
                 end - begin,
             )
-            kernels.add_beam(
-                acc,
-                buffers.rows[b],
-                buffers.coef[b],
-                buffers.delay[b],
-                wiring.ramp,
-                row_at,
-                buffers.piece[b],
-                begin,
-                end,
-                SEGMENT,
-            )
     sharing.shared_gain(total, wiring.drive, begin, end)
     kernels.fill_carrier(
         buffers.carrier, total, wiring.cycles_per_sample, sample + begin, begin, end
     )
-    kernels.meet_carrier(buffers.out, acc, buffers.carrier, begin, end)
+    kernels.sum_feeds(
+        buffers.out,
+        buffers.acc,
+        buffers.carrier,
+        buffers.rows,
+        buffers.coef,
+        buffers.active,
+        buffers.piece,
+        wiring.ramp,
+        row_at,
+        begin,
+        end,
+    )
 
 
 @compiled
@@ -315,7 +318,8 @@ def _aim(buffers, wiring, b, sample):
     start = sample + buffers.piece[b]
     kernels.aim_feeds(
         buffers.coef[b],
-        buffers.delay[b],
+        buffers.edge[b],
+        buffers.known[b],
         wiring.cells,
         wiring.wanted,
         wiring.feed,
@@ -328,6 +332,7 @@ def _aim(buffers, wiring, b, sample):
         wiring.steer,
     )
     buffers.stale[b] = False
+    buffers.known[b] = True
     buffers.still[b] = glides.travel_settled(buffers.aim[b], start) and glides.reach_settled(
         buffers.reach[b], start
     )

@@ -4,16 +4,16 @@ from __future__ import annotations
 
 import numpy as np
 
-from beamctl.engine.renderer import Renderer
+from beamctl.engine.chain import Chain
 from beamctl.show.records import Record
 from beamctl.show.show import Show
 
 
 def warm(show: Show) -> None:
-    """Render a few segments of a throw-away renderer, each kind of beam movement once."""
+    """Send a few segments through a throw-away chain, each kind of beam movement once."""
     silence = np.zeros((64, 2), np.float32)
     silence.flags.writeable = False  # as the prepared sounds are, which is another type compiled
-    renderer = Renderer(show, {panel: {"": silence} for panel in show.rig.panel})
+    chain = Chain(show, {panel: {"": silence} for panel in show.rig.panel})
     for beam in show.sheet.beam:
         for record in (
             Record(0, "play", beam, args={"sound": "", "loop": True}),
@@ -21,5 +21,5 @@ def warm(show: Show) -> None:
             Record(300, "aim", beam, args={"direction": [0.1, 0.9, 0.0], "n": 3840}),
             Record(310, "reach", beam, args={"per_m": 0.2, "n": 3840}),
         ):
-            renderer.put(record)
-    renderer.render(np.zeros((600, show.channels), np.float32))
+            chain.put(record)
+    chain.render(np.zeros((600, show.channels), np.float32))

@@ -101,21 +101,18 @@ def kernel_of(panel: Panel) -> Callable[[], None]:
     row_at = b.rows.shape[3] - SEGMENT
 
     def work() -> None:
-        b.acc[:] = 0.0
         for i in range(len(panel.states)):
-            start = 30_000.0
             kernels.aim_feeds(
-                b.coef[i], b.delay[i], w.cells, w.wanted, w.feed, w.share, b.scratch,
-                b.aim[i], b.reach[i], start, float(SEGMENT), w.steer,
+                b.coef[i], b.edge[i], True, w.cells, w.wanted, w.feed, w.share, b.scratch,
+                b.aim[i], b.reach[i], 30_000.0, float(SEGMENT), w.steer,
             )  # fmt: skip
             kernels.fill_rows(
                 b.rows[i], b.base[i], w.row_taps, row_at, kernels.ROW_TAPS - 1, SEGMENT
             )
-            kernels.add_beam(
-                b.acc, b.rows[i], b.coef[i], b.delay[i], w.ramp, row_at, 0, 0, SEGMENT, SEGMENT
-            )
         kernels.fill_carrier(b.carrier, b.total, w.cycles_per_sample, 30_000, 0, SEGMENT)
-        kernels.meet_carrier(b.out, b.acc, b.carrier, 0, SEGMENT)
+        kernels.sum_feeds(
+            b.out, b.acc, b.carrier, b.rows, b.coef, b.active, b.piece, w.ramp, row_at, 0, SEGMENT
+        )
 
     return work
 
@@ -130,13 +127,13 @@ def numpy_ways(panel: Panel) -> dict[str, Callable[[], object]]:
     """
     b, taps = panel.buffers, panel.wiring.row_taps
     beams, feeds = len(panel.states), b.out.shape[0]
-    weights = (b.coef[:, :, 0] + 1j * b.coef[:, :, 1]).astype(np.complex64)
+    weights = (b.coef[:, 0] + 1j * b.coef[:, 1]).astype(np.complex64)
     carrier = np.exp(2j * np.pi * np.arange(SEGMENT) * 40_000 / RATE).astype(np.complex64)
-    longest = int(b.delay[:, :, 0].max()) // 16 + 8
+    longest = int(b.coef[:, 2].max()) // 16 + 8
     base = np.random.default_rng(1).standard_normal((beams, longest + SEGMENT, 2))
     envelope = base.astype(np.float32).view(np.complex64)[..., 0]
-    low = np.floor(b.delay[:, :, 0]).astype(int)
-    part = b.delay[:, :, 0] - low
+    low = np.floor(b.coef[:, 2]).astype(int)
+    part = b.coef[:, 2] - low
 
     matrix = np.zeros((feeds, beams, longest), np.complex64)
     for beam in range(beams):

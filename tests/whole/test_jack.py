@@ -8,7 +8,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 from jackserver import SINK, JackServer, capture_ports, jack_server, ports, wait_for
-from support.running import STARTS_S, Running, Samples, host, records_of, rendered, told
+from support.running import STARTS_S, Running, Samples, host, rendered, streams_of, told
 from support.smallshow import RATE_HZ, write_steady_show
 
 pytestmark = pytest.mark.real
@@ -30,8 +30,7 @@ def test_the_ports_carry_what_is_rendered_offline(tmp_path: Path) -> None:
             running.open()
             caught, ran_dry = capture_a_go(server, running)
             assert running.stop() == 0
-        left = records_of(journal)[-1]
-        offline = rendered(show, records_of(journal), left.sample)[:, FEEDS]
+        offline = rendered(*streams_of(journal))[:, FEEDS]
 
     go = told(journal, "go")[0].sample
     assert not offline[:go].any()

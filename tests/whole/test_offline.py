@@ -18,6 +18,7 @@ from beamctl.errors import ShowError
 from beamctl.files.reader import load_show
 from beamctl.host.journal import Journal, read_journal
 from beamctl.host.offline import left, play_through
+from beamctl.show.records import Record
 
 SHORT = ("--go=1@0", "--go=2@0.05", "--for=0.25")
 
@@ -110,6 +111,7 @@ def keep(show: Path, journal: Path) -> None:
     """A journal of a short piece, with a hash of nothing, made without rendering."""
     found = load_show(show)
     kept = Journal(journal, found, "null")
+    kept.write([Record(0, "stream")])
     kept.write(play_through(found, [(0, "1"), (9_600, "2")], 48_000))
     kept.write([left(48_000, "0" * 64)])
     kept.close()
@@ -140,15 +142,25 @@ def test_a_journal_cut_anywhere_keeps_its_whole_lines(show: Path, tmp_path: Path
         assert found == whole[: max(lines - 1, 0) + (ended and lines > 0)], size
 
 
-@pytest.mark.parametrize("what", ["cut", "cut in a line", "garbage", "empty", "missing", "folder"])
-def test_what_is_no_whole_journal_is_refused(show: Path, tmp_path: Path, what: str) -> None:
+@pytest.mark.parametrize("gone", [20, 300])
+def test_a_journal_without_its_end_is_rendered_and_not_compared(
+    show: Path, tmp_path: Path, gone: int
+) -> None:
+    journal = tmp_path / "kept.jsonl"
+    keep(show, journal)
+    journal.write_bytes(journal.read_bytes()[:-gone])
+    done = beamctl("replay", journal)
+    assert done.returncode == 0, done.stderr
+    assert "cut off, not compared" in done.stdout
+
+
+@pytest.mark.parametrize("what", ["header only", "garbage", "empty", "missing", "folder"])
+def test_what_cannot_be_replayed_is_refused(show: Path, tmp_path: Path, what: str) -> None:
     journal = tmp_path / "kept.jsonl"
     keep(show, journal)
     data = journal.read_bytes()
-    if what == "cut":
-        journal.write_bytes(b"".join(data.splitlines(keepends=True)[:-1]))
-    elif what == "cut in a line":
-        journal.write_bytes(data[:-20])
+    if what == "header only":
+        journal.write_bytes(data.splitlines(keepends=True)[0])
     elif what == "garbage":
         journal.write_bytes(bytes(range(256)) * 10)
     elif what == "empty":

@@ -1,0 +1,419 @@
+"""Blows to the processes of a running show, and what left its output around them."""
+
+from __future__ import annotations
+
+import os
+import pty
+import select
+import signal
+import subprocess
+import threading
+import time
+from collections.abc import Callable, Iterable, Iterator
+from concurrent.futures import ThreadPoolExecutor
+from contextlib import contextmanager
+from pathlib import Path
+from typing import NamedTuple, TypeVar
+
+import numpy as np
+import soundfile
+from jackserver import SINK, JackServer, capture_ports, ports
+from support.running import COMMAND, SOON_S, STARTS_S, Running, Samples, told, wait_for
+from support.smallshow import CELL, GUARD, HOUSE, RATE_HZ
+
+from beamctl.engine import layout as at
+from beamctl.engine.chain import Chain
+from beamctl.engine.outlet import Outlet
+from beamctl.host.loading import prepare_sounds
+from beamctl.host.offline import Stream
+from beamctl.host.places import memory_folder, show_key
+from beamctl.show.records import Record
+from beamctl.show.show import Show
+
+FEEDS = 8
+MS = RATE_HZ // 1000  # frames
+RAMP = 20 * MS
+AUDIBLE = 0.001  # re full scale
+CAPTURE_S = 2.0
+LEAD_S = 0.15  # of the cue before a blow, by which a capture finds its place
+STEP = 2.0**-31  # of what the recorder of ports keeps
+TITLE = "a loop that travels"
+
+SHEET = f"""format = 1
+title = "Blows"
+[beam.drone]
+panel = "square"
+[[cue]]
+ref = "1"
+title = "{TITLE}"
+[[cue.act]]
+beam = "drone"
+sound = "noise.wav"
+loop = true
+seat = "A1"
+law = "ssb"
+trim_db = -12.0
+over_s = 0.05
+[[cue.act]]
+at_s = 0.1
+beam = "drone"
+seat = "A4"
+over_s = 60.0
+"""
+
+RIG = f"""format = 1
+rate_hz = {RATE_HZ}
+ring_ms = 32.0
+[panel.square]
+at_m = [0.0, 0.0, 3.0]
+tilt_deg = -17.0
+grid = {{ columns = 4, rows = 2, pitch_mm = 10.0 }}
+{CELL}"""
+
+
+def write_loop_show(folder: Path) -> Path:
+    """Eight feeds, one cue: a loop of noise under a beam that travels, so that no frame recurs."""
+    (folder / "sounds").mkdir(parents=True)
+    for name, text in {"sheet": SHEET, "rig": RIG, "house": HOUSE, "guard": GUARD}.items():
+        (folder / f"{name}.toml").write_text(text)
+    noise = np.random.default_rng(7).normal(0.0, 0.1, 60_007)  # 50 005 5/6 periods of the carrier
+    soundfile.write(folder / "sounds/noise.wav", noise, 48_000)
+    return folder
+
+
+class Blow(NamedTuple):
+    """When a blow fell: the frame that the final stage was to send next, and the time."""
+
+    frame: int
+    at_s: float
+
+    def since_ms(self) -> float:
+        """Time since the blow."""
+        return 1000.0 * (time.monotonic() - self.at_s)
+
+
+class Heard(NamedTuple):
+    """Frames that left, (n, feeds), and the number of the first."""
+
+    first: int
+    samples: Samples
+
+    def between(self, begin: int, end: int) -> Samples:
+        """Frames `begin` up to `end` by their numbers, as far as they were heard."""
+        return self.samples[max(0, begin - self.first) : max(0, end - self.first)]
+
+    def silent_from(self) -> int:
+        """Number of the frame after the last that was not exactly zero."""
+        sounding = np.flatnonzero(self.samples.any(axis=1))
+        return self.first + (int(sounding[-1]) + 1 if len(sounding) else 0)
+
+    def sounds_before(self, frame: int) -> None:
+        """Assert that each of the ten milliseconds before `frame` sounds."""
+        last = self.between(frame - 10 * MS, frame)
+        assert len(last) == 10 * MS
+        assert np.abs(last).reshape(10, -1).max(axis=1).min() > AUDIBLE
+
+    def ms_to_zero(self, blow: Blow, until: int | None = None) -> float:
+        """From a blow to the last frame that was not exactly zero, before frame `until`."""
+        end = self.first + len(self.samples) if until is None else until
+        after = Heard(blow.frame, self.between(blow.frame, end))
+        return (after.silent_from() - blow.frame) / MS
+
+
+Deed = TypeVar("Deed")
+Caught = Callable[[Heard], Heard]  # what left, placed by what is expected
+
+
+# -- processes --------------------------------------------------------------------------------
+
+
+def strike(outlet: Outlet, pid: int, how: signal.Signals) -> Blow:
+    """Send `how` to a process at once after the final stage let a block of an open output out."""
+    before, until_s = outlet.count(at.SOUNDED), time.monotonic() + SOON_S
+    while outlet.count(at.SOUNDED) == before:
+        assert time.monotonic() < until_s, "nothing sounds, so a blow would show nothing"
+        time.sleep(0.0002)
+    assert outlet.count(at.GATE) == 1
+    assert outlet.gate_gain == 1.0
+    blow = Blow(outlet.count(at.READ), time.monotonic())
+    os.kill(pid, how)
+    return blow
+
+
+@contextmanager
+def going_on(pid: int) -> Iterator[None]:
+    """A stopped process goes on when the block is left, whatever became of the test."""
+    try:
+        yield
+    finally:
+        os.kill(pid, signal.SIGCONT)
+
+
+def engines_of(running: Running) -> list[int]:
+    """Process numbers of the engines of a host."""
+    host = running.process.pid
+    children = Path(f"/proc/{host}/task/{host}/children").read_text().split()
+    return [int(c) for c in children if b"spawn_main" in Path(f"/proc/{c}/cmdline").read_bytes()]
+
+
+def engine_of(running: Running) -> int:
+    """Process number of its one engine."""
+    (found,) = engines_of(running)
+    return found
+
+
+class Watched:
+    """A process that is not ours, whose end is noticed at once."""
+
+    def __init__(self, pid: int) -> None:
+        self.pid = pid
+        self._handle = os.pidfd_open(pid)
+
+    def ended(self, timeout_s: float = SOON_S) -> bool:
+        """True once the process is dead."""
+        poll = select.poll()
+        poll.register(self._handle, select.POLLIN)
+        return bool(poll.poll(1000.0 * timeout_s))
+
+    def close(self) -> None:
+        """Watch no more."""
+        os.close(self._handle)
+
+
+@contextmanager
+def watched(pid: int) -> Iterator[Watched]:
+    """The process of this number, watched."""
+    process = Watched(pid)
+    try:
+        yield process
+    finally:
+        process.close()
+
+
+class Desk:
+    """A desk that has joined a host, on a terminal that is read until it is told to freeze."""
+
+    def __init__(self, show: Path, frozen: bool = False) -> None:
+        self._ours, theirs = pty.openpty()
+        self.process = subprocess.Popen(
+            [*COMMAND, "desk", str(show)],
+            stdin=theirs,
+            stdout=theirs,
+            stderr=theirs,
+            start_new_session=True,
+        )
+        os.close(theirs)
+        self.shown = bytearray()
+        if not frozen:
+            threading.Thread(target=self._read, daemon=True).start()
+
+    def waits_for_its_terminal(self) -> bool:
+        """True when a thread of the desk is blocked because nobody takes what it writes."""
+        for thread in Path(f"/proc/{self.process.pid}/task").iterdir():
+            if "tty" in (thread / "wchan").read_text():
+                return True
+        return False
+
+    def end(self) -> None:
+        """Kill what is left of it."""
+        self.process.kill()
+        self.process.wait(SOON_S)
+        os.close(self._ours)
+
+    def _read(self) -> None:
+        try:
+            while block := os.read(self._ours, 65_536):
+                self.shown += block
+        except OSError:  # nobody holds the other end any more
+            return
+
+
+@contextmanager
+def desk(show: Path, frozen: bool = False) -> Iterator[Desk]:
+    """A desk that shows the sheet, or whose terminal nobody ever reads."""
+    found = Desk(show, frozen)
+    try:
+        if frozen:
+            wait_for(found.waits_for_its_terminal, "the desk to be blocked in writing", STARTS_S)
+        else:
+            wait_for(lambda: TITLE.encode() in found.shown, "the desk to show the sheet", STARTS_S)
+        yield found
+    finally:
+        found.end()
+
+
+# -- a show that plays ------------------------------------------------------------------------
+
+
+class Stage:
+    """A show on a host, and an eye on the final stage of its engine."""
+
+    def __init__(self, running: Running, folder: Path) -> None:
+        self.running = running
+        self._path = memory_folder() / f"{show_key(folder)}.outlet"
+        self.join()
+
+    def join(self) -> None:
+        """Look at the engine that runs now."""
+        self.outlet = Outlet.attach(self._path)
+
+    def play(self) -> None:
+        """Open the output and fire the cue, until both its acts are under way and written down."""
+        self.running.open()
+        self.running.act("go", ref="1")
+        journal = self.running.journal
+        wait_for(lambda: len(told(journal, "aim")) == 2, "the travel in the journal")
+        self.running.pass_by(0.1)
+
+    def final_records(self) -> list[Record]:
+        """What the final stage did since it was joined, as a host that lives writes it."""
+        found = []
+        for event in self.outlet.events():
+            if event.name == "dry":
+                found.append(Record(event.sample, "dry", args={"n": event.value}))
+            else:
+                args = {"open": int(event.name == "opened"), "n": event.value, "why": event.name}
+                found.append(Record(event.sample, "gate", args=args))
+        return found
+
+
+def again(show: Show, records: Iterable[Record], start: int, until: int) -> Heard:
+    """Frames `start` to `until` of a show under these records, through renderer and final stage."""
+    chain = Chain(show, prepare_sounds(show, lambda *_: None), start)
+    for record in records:
+        chain.put(record)
+    out = np.zeros((until - start, show.channels), np.float32)
+    chain.render(out)
+    return Heard(start, out)
+
+
+class Judge:
+    """Holds what was heard of one engine against the replay of what it was sent."""
+
+    def __init__(self, show: Show, stream: Stream, until: int | None = None) -> None:
+        """`until`: the frame that an engine came to which could not tell it itself."""
+        if until is None:
+            assert stream.left is not None
+            until = int(stream.left.args["read"])
+        self.start, self.until = stream.start, until
+        self._gates = [r for r in stream.records if r.what == "gate"]
+        self.expected = again(show, stream.records, self.start, until)
+        unclosed = [r for r in stream.records if r.what != "gate" or r.args["open"]]
+        self.asked = again(show, unclosed, self.start, until)
+
+    def gates(self) -> list[tuple[str, int]]:
+        """Why the gate moved, and when."""
+        return [(str(r.args["why"]), r.sample) for r in self._gates]
+
+    def same_and_no_louder(self, caught: Caught, tolerance: float) -> Heard:
+        """What left is the replay, and nowhere above what the cue asked.
+
+        Before the engine began, and from a cut on, nothing sounds at all.
+        """
+        heard = caught(self.expected)
+        first, end = max(heard.first, self.start), heard.silent_from()
+        assert end <= self.until
+        assert not heard.between(heard.first, first).any()
+        sent = heard.between(first, end)
+        expected, asked = (h.between(first, end) for h in (self.expected, self.asked))
+        np.testing.assert_allclose(sent, expected, rtol=0.0, atol=tolerance)
+        assert (np.abs(sent) <= np.abs(asked) + tolerance).all()
+        return heard
+
+    def falls_by_the_ramp(self, heard: Heard, begin: int) -> None:
+        """From `begin` on, for 20 ms, the output follows half a cosine down to nothing."""
+        sent, full = (h.between(begin, begin + RAMP) for h in (heard, self.asked))
+        assert (np.abs(full).max(axis=1) > AUDIBLE).mean() > 0.5
+        fall = np.cos(0.5 * np.pi * np.arange(RAMP) / RAMP)[:, np.newaxis] ** 2
+        np.testing.assert_allclose(sent, fall * full, rtol=0.0, atol=1e-5)
+        assert not heard.between(begin + RAMP, begin + 2 * RAMP).any()
+
+
+# -- two ways to hear what left ---------------------------------------------------------------
+
+
+class RecordingEar:
+    """The recording sink: all that left, sample by sample, also of an engine that was killed."""
+
+    name = "recording"
+    tolerance = 0.0
+    env: dict[str, str] | None = None
+
+    def __init__(self, folder: Path) -> None:
+        self._folder = folder
+        self._hosts = 0
+
+    def new_sink(self) -> str:
+        """Sink of the next host."""
+        self._hosts += 1
+        (self._folder / f"{self._hosts}").mkdir()
+        return f"file:{self._take(0)}"
+
+    def listen(self, deed: Callable[[], Deed], engine: int = 0) -> tuple[Deed, Caught]:
+        """Do it; all that the host's engine of this number sends is kept anyway."""
+        path = self._take(engine)
+        return deed(), lambda expected: Heard(expected.first, recorded(path))
+
+    def _take(self, engine: int) -> Path:
+        name = "take.wav" if engine == 0 else f"take.{engine + 1}.wav"
+        return self._folder / f"{self._hosts}" / name
+
+
+class PortEar:
+    """JACK: what its ports carried for two seconds around each deed, heard by another client."""
+
+    name = "JACK"
+    tolerance = STEP
+
+    def __init__(self, server: JackServer) -> None:
+        self._server = server
+        self.env: dict[str, str] | None = server.env
+
+    def new_sink(self) -> str:
+        """Sink of the next host."""
+        return SINK
+
+    def listen(self, deed: Callable[[], Deed], engine: int = 0) -> tuple[Deed, Caught]:
+        """Do it between beginning and end of a capture."""
+        del engine  # only the last one has ports
+        before = set(ports(self._server))
+        outputs = [port for port in ports(self._server) if port.startswith("PortAudio")]
+        assert len(outputs) == FEEDS, outputs
+        with ThreadPoolExecutor(1) as pool:
+            capture = pool.submit(capture_ports, self._server, outputs, CAPTURE_S)
+            wait_for(lambda: len(set(ports(self._server)) - before) >= FEEDS, "the recorder")
+            time.sleep(LEAD_S)
+            done = deed()
+        caught = capture.result()
+        return done, lambda expected: placed(caught, expected)
+
+
+def placed(caught: Samples, expected: Heard) -> Heard:
+    """Number the frames of a capture by finding one of the first that sound among the expected."""
+    sounding = np.flatnonzero(np.abs(caught).max(axis=1) > AUDIBLE)
+    assert len(sounding), "silence was captured"
+    k = int(sounding[len(sounding) // 20])
+    found = np.flatnonzero(np.abs(expected.samples - caught[k]).max(axis=1) <= STEP)
+    assert len(found) == 1, f"a frame that was captured is expected {len(found)} times"
+    return Heard(expected.first + int(found[0]) - k, caught)
+
+
+def recorded(path: Path) -> Samples:
+    """Samples of a recording; of one whose writer was killed, as many as are there."""
+    if not path.exists():
+        return _unfinished(Path(f"{path}.part"))
+    samples, rate_hz = soundfile.read(path, dtype="float32", always_2d=True)
+    assert rate_hz == RATE_HZ
+    return np.asarray(samples)
+
+
+def _unfinished(part: Path) -> Samples:
+    """Whole frames after a header that does not know their number yet."""
+    raw = part.read_bytes()
+    place = 12
+    while (name := raw[place : place + 4]) != b"data":
+        assert name, "no samples"
+        place += 8 + int.from_bytes(raw[place + 4 : place + 8], "little")
+    body = raw[place + 8 :]
+    count = len(body) // (4 * FEEDS) * FEEDS
+    return np.frombuffer(body, "<f4", count).reshape(-1, FEEDS)

@@ -1,0 +1,314 @@
+"""Desk, host and engine are killed and stopped while a cue sounds; what leaves is judged by sample.
+
+Three blows of each kind on each sink; BEAMCTL_BLOWS=20 in the environment makes it twenty. Every
+blow falls right after the final stage was seen to let a block of the open output out. All that was
+recorded, and on JACK what the ports carried for two seconds around every blow, must be the replay
+of the journal: nothing repeated, skipped or louder. The last lines of a run tell the times.
+"""
+
+from __future__ import annotations
+
+import os
+import shutil
+import signal
+import statistics
+import time
+from collections import defaultdict
+from collections.abc import Iterable, Iterator
+from functools import partial
+from pathlib import Path
+from typing import NamedTuple
+
+import pytest
+from jackserver import jack_server
+from support.blows import (
+    FEEDS,
+    Blow,
+    Desk,
+    Heard,
+    Judge,
+    PortEar,
+    RecordingEar,
+    Stage,
+    desk,
+    engine_of,
+    engines_of,
+    going_on,
+    recorded,
+    strike,
+    watched,
+    write_loop_show,
+)
+from support.running import fired, host, outputs, told, wait_for
+from support.smallshow import RATE_HZ, write_show
+
+from beamctl.engine import layout as at
+from beamctl.host import offline
+from beamctl.host.places import memory_folder
+from beamctl.show.records import SOUNDING, Record
+
+BLOWS = int(os.environ.get("BEAMCTL_BLOWS", "3"))
+HARMLESS = 5  # blows that one host goes through when they cost it nothing
+ENGINES = 2  # that a host may lose within a minute and still start the next
+ZERO_MS, ENDED_MS, SHUT_MS = 250.0, 200.0, 3000.0
+PERIOD = 1024
+
+Ear = RecordingEar | PortEar
+
+pytestmark = pytest.mark.timeout(300 + 20 * BLOWS)
+
+
+class Figures:
+    """Milliseconds by what they tell."""
+
+    def __init__(self) -> None:
+        self.found: dict[str, list[float]] = defaultdict(list)
+
+    def note(self, name: str, ms: float, bar_ms: float) -> None:
+        """Keep a figure, which must lie within its bar."""
+        self.found[f"{name} (at most {bar_ms:g})"].append(ms)
+        assert 0.0 < ms <= bar_ms, f"{name}: {ms:.1f} ms"
+
+    def lines(self) -> Iterator[str]:
+        """One line for each name."""
+        for name, ms in self.found.items():
+            spread = f"{min(ms):.1f} / {statistics.median(ms):.1f} / {max(ms):.1f} ms"
+            yield f"{name}: {spread}, min / median / max of {len(ms)}"
+
+
+@pytest.fixture(scope="module")
+def figures(request: pytest.FixtureRequest) -> Iterator[Figures]:
+    """What the tests of this module measured, said when they are over."""
+    found = Figures()
+    yield found
+    manager = request.config.pluginmanager
+    with manager.get_plugin("capturemanager").global_and_fixture_disabled():
+        for line in ("", *found.lines()):
+            manager.get_plugin("terminalreporter").write_line(line)
+
+
+@pytest.fixture(params=["recording", pytest.param("jack", marks=pytest.mark.real)])
+def ear(request: pytest.FixtureRequest, tmp_path: Path) -> Iterator[Ear]:
+    if request.param == "recording":
+        yield RecordingEar(tmp_path)
+    else:
+        with jack_server(RATE_HZ, PERIOD, 2, FEEDS) as server:
+            yield PortEar(server)
+
+
+@pytest.fixture
+def folder(tmp_path: Path) -> Iterator[Path]:
+    """The show; what killed hosts left in memory is removed at the end."""
+    yield write_loop_show(tmp_path / "show")
+    shutil.rmtree(memory_folder())
+
+
+def journals(folder: Path, most: int) -> Iterator[tuple[Path, int]]:
+    """A journal for every host, and how many of the blows it is to take."""
+    for done in range(0, BLOWS, most):
+        yield folder.parent / f"from-{done}.jsonl", min(most, BLOWS - done)
+
+
+# -- the host ---------------------------------------------------------------------------------
+
+
+def test_a_killed_host_leaves_by_the_ramp(folder: Path, ear: Ear, figures: Figures) -> None:
+    for journal, _ in journals(folder, 1):
+        with host(folder, ear.new_sink(), journal, ear.env) as running:
+            stage = Stage(running, folder)
+            stage.play()
+            blow, caught = ear.listen(partial(kill_host, stage))
+        show, (stream,) = offline.recall(journal)
+        stream.records += stage.final_records()  # nobody was there to write them
+        judge = Judge(show, stream, stage.outlet.count(at.READ))
+        heard = judge.same_and_no_louder(caught, ear.tolerance)
+        heard.sounds_before(blow.frame)
+        assert [why for why, _ in judge.gates()] == ["opened", "hushed"]
+        judge.falls_by_the_ramp(heard, judge.gates()[1][1])
+        zero_ms = heard.ms_to_zero(blow)
+        figures.note(f"{ear.name}: host killed, zero after", zero_ms, ZERO_MS)
+
+
+def kill_host(stage: Stage) -> Blow:
+    with watched(engine_of(stage.running)) as engine:
+        blow = strike(stage.outlet, stage.running.process.pid, signal.SIGKILL)
+        stage.running.wait()
+        assert engine.ended(), "an engine stays without its host"
+    return blow
+
+
+def test_a_stopped_host_leaves_by_the_ramp_and_stays_shut(
+    folder: Path, ear: Ear, figures: Figures
+) -> None:
+    for journal, share in journals(folder, HARMLESS):
+        with host(folder, ear.new_sink(), journal, ear.env) as running:
+            stage = Stage(running, folder)
+            stage.play()
+            landed = [ear.listen(partial(stop_host, stage)) for _ in range(share)]
+            assert running.stop() == 0
+        show, (stream,) = offline.recall(journal)
+        judge = Judge(show, stream)
+        falls, rises = judge.gates()[1:-1:2], judge.gates()[2:-1:2]
+        assert [why for why, _ in falls] == ["lease-over"] * share
+        assert [why for why, _ in rises] == ["opened"] * share
+        assert outputs(journal) == ["SHUT", "OPEN", *["HUSHED", "OPEN"] * share, "COLD"]
+        for (blow, caught), (_, fall), (_, rise) in zip(landed, falls, rises, strict=True):
+            heard = judge.same_and_no_louder(caught, ear.tolerance)
+            heard.sounds_before(blow.frame)
+            judge.falls_by_the_ramp(heard, fall)
+            zero_ms = heard.ms_to_zero(blow, rise)
+            figures.note(f"{ear.name}: host stopped, zero after", zero_ms, ZERO_MS)
+            assert heard.between(rise, rise + RATE_HZ // 2).any(), "it was not restored"
+
+
+def stop_host(stage: Stage) -> Blow:
+    """Stop the host until the output is shut; it stays so until it is restored on purpose."""
+    running, outlet = stage.running, stage.outlet
+    with going_on(running.process.pid):
+        blow = strike(outlet, running.process.pid, signal.SIGSTOP)
+        wait_for(lambda: outlet.gate_gain == 0.0, "the gate to shut")
+    wait_for(lambda: running.snapshot().output == "HUSHED", "HUSHED")
+    (notice,) = running.snapshot().notices
+    assert "the host stalled" in notice
+    running.act("acknowledge")
+    running.pass_by(0.3)
+    assert running.snapshot().output == "HUSHED"
+    assert outlet.gate_gain == 0.0
+    running.open()
+    wait_for(lambda: outlet.gate_gain == 1.0, "the gate to rise")
+    return blow
+
+
+# -- the engine -------------------------------------------------------------------------------
+
+
+class Loss(NamedTuple):
+    """An engine lost: the blow, the frame it came to, and when it was dead and replaced."""
+
+    blow: Blow
+    came_to: int
+    ended_ms: float
+    shut_ms: float
+
+
+@pytest.mark.parametrize("how", [signal.SIGKILL, signal.SIGSTOP], ids=["killed", "stopped"])
+def test_a_lost_engine_is_replaced_and_the_next_offers_what_looped(
+    folder: Path, ear: Ear, how: signal.Signals, figures: Figures
+) -> None:
+    what = f"{ear.name}: engine {'killed' if how == signal.SIGKILL else 'stopped'}"
+    for journal, share in journals(folder, ENGINES):
+        with host(folder, ear.new_sink(), journal, ear.env) as running:
+            stage, landed = Stage(running, folder), []
+            stage.play()
+            for number in range(share):
+                landed.append(ear.listen(partial(lose_engine, stage, how), number))
+                stage.join()
+                running.open()
+                running.pass_by(0.4)
+            _, last = ear.listen(lambda: running.pass_by(0.3), share)
+            assert running.stop() == 0
+        show, streams = offline.recall(journal)
+        ends = [stream.start for stream in streams[1:]]
+        for (loss, caught), stream, next_start in zip(landed, streams, ends, strict=True):
+            assert loss.came_to <= next_start
+            heard = Judge(show, stream, loss.came_to).same_and_no_louder(caught, ear.tolerance)
+            heard.sounds_before(heard.silent_from())
+            figures.note(f"{what}, dead after", loss.ended_ms, ENDED_MS)
+            figures.note(f"{what}, next one SHUT after", loss.shut_ms, SHUT_MS)
+        judge = Judge(show, streams[-1])
+        assert [why for why, _ in judge.gates()] == ["opened", "hushed"]
+        assert judge.same_and_no_louder(last, ear.tolerance).samples.any(), "no loop came back"
+
+
+def lose_engine(stage: Stage, how: signal.Signals) -> Loss:
+    running = stage.running
+    with watched(engine_of(running)) as engine:
+        blow = strike(stage.outlet, engine.pid, how)
+        assert engine.ended(), "the host leaves an engine that is stopped"
+        ended_ms = blow.since_ms()
+    wait_for(lambda: running.snapshot().output == "LOST", "LOST")
+    wait_for(lambda: running.snapshot().output == "SHUT", "the next engine")
+    shut_ms = blow.since_ms()
+    assert running.snapshot().states["1"] == "running"
+    assert "engine gone; what looped comes back with * then Enter" in running.snapshot().notices
+    return Loss(blow, stage.outlet.count(at.READ), ended_ms, shut_ms)
+
+
+def test_three_deaths_in_a_minute_stop_the_restarts(folder: Path) -> None:
+    journal = folder.parent / "deaths.jsonl"
+    with host(folder, "null", journal) as running:
+        for death in (1, 2, 3):
+            os.kill(engine_of(running), signal.SIGKILL)
+            wait_for(lambda: running.snapshot().output == "LOST", "LOST")
+            if death < 3:
+                wait_for(lambda: running.snapshot().output == "SHUT", "the next engine")
+        wait_for(lambda: bool(running.snapshot().engine.busy), "the host to tell")
+        time.sleep(SHUT_MS / 1000.0)  # by when a fourth would have opened
+        found = running.snapshot()
+        assert found.output == "LOST"
+        assert found.engine.busy == "engine gone three times in a minute"
+        assert "three engines died in a minute" in found.notices[-1]
+        assert not engines_of(running)
+        assert running.stop() == 0
+    assert outputs(journal) == ["SHUT", "LOST", "SHUT", "LOST", "SHUT", "LOST", "COLD"]
+
+
+# -- the desk ---------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("how", [signal.SIGKILL, signal.SIGSTOP], ids=["killed", "stopped"])
+def test_a_lost_desk_changes_no_sample(folder: Path, ear: Ear, how: signal.Signals) -> None:
+    for journal, share in journals(folder, HARMLESS):
+        with host(folder, ear.new_sink(), journal, ear.env) as running:
+            stage, landed = Stage(running, folder), []
+            stage.play()
+            for _ in range(share):
+                with desk(folder) as shown:
+                    landed.append(ear.listen(partial(lose_desk, stage, shown, how)))
+            assert running.stop() == 0
+        show, (stream,) = offline.recall(journal)
+        judge = Judge(show, stream)
+        assert [why for why, _ in judge.gates()] == ["opened", "hushed"]
+        for blow, caught in landed:
+            heard = judge.same_and_no_louder(caught, ear.tolerance)
+            heard.sounds_before(blow.frame)
+            heard.sounds_before(blow.frame + RATE_HZ // 4)
+        assert offline.replay(show, [stream], lambda _: None, lambda *_: None)[0].same
+
+
+def lose_desk(stage: Stage, shown: Desk, how: signal.Signals) -> Blow:
+    """The show goes on for a while without its desk, which goes on itself if it can."""
+    with going_on(shown.process.pid):
+        blow = strike(stage.outlet, shown.process.pid, how)
+        stage.running.pass_by(0.3)
+    if how == signal.SIGKILL:
+        assert shown.process.wait() == -signal.SIGKILL
+    else:
+        so_far = len(shown.shown)
+        wait_for(lambda: len(shown.shown) > so_far, "the desk to draw again")
+    return blow
+
+
+def test_a_frozen_terminal_changes_no_sample_and_no_cue_time(tmp_path: Path) -> None:
+    folder, journal, take = write_show(tmp_path / "small"), tmp_path / "f.jsonl", tmp_path / "f.wav"
+    with host(folder, f"file:{take}", journal) as running, desk(folder, frozen=True) as shown:
+        running.open()
+        for ref in ("1", "2", "3"):
+            running.act("go", ref=ref)
+            running.pass_by(0.3)
+        wait_for(lambda: "4" in fired(journal), "the follow-on")
+        running.pass_by(0.1)
+        assert shown.waits_for_its_terminal(), "the terminal was not frozen"
+        assert running.stop() == 0
+
+    show, (stream,) = offline.recall(journal)
+    judge = Judge(show, stream)
+    judge.same_and_no_louder(lambda _: Heard(stream.start, recorded(take)), 0.0)
+    gos = [(r.sample, r.cue) for r in told(journal, "go") if r.who == "desk"]
+    planned = offline.play_through(show, gos, judge.until)
+    assert moves(planned) == moves(stream.records)
+
+
+def moves(records: Iterable[Record]) -> list[tuple[int, str, str, str]]:
+    """What was done to which beam on whose account, and when."""
+    return sorted((r.sample, r.what, r.beam, r.cue) for r in records if r.what in SOUNDING)
