@@ -39,4 +39,7 @@ numba.config.CACHE_DIR = str(cache_folder())  # type: ignore[attr-defined]
 KEPT = True  # on disk
 compiled = numba.njit(cache=KEPT, nogil=True, error_model="numpy")
 
+# for what runs inside a loop of another function, where a call would cost more than the work
+inlined = numba.njit(cache=KEPT, nogil=True, error_model="numpy", inline="always")
+
 jitable = register_jitable  # lends a plain function of a pure package to compiled code

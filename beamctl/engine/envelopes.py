@@ -92,24 +92,28 @@ def shape_band(out, out_at, count, half, begin, taps_re, taps_im):
 
 
 @compiled
-def raise_rate(out, out_at, count, quarter, at, taps, first):
+def raise_rate(out, out_at, count, quarter, at, taps, first, line):
     """One to four: out[:, out_at + i], i < count, at absolute positions first + i.
 
     quarter  (2, …) float32; quarter[:, at] is the value at the quarter-rate position of `first`
              rounded down, and K / 4 - 1 values of history stand before it
     taps     (K,) float32, K a multiple of 4
+    line     (…,) float32, room for count / 4 + 1 values: one of the four phases at a time
     """
-    for i in range(count):
-        phase = (first + i) % 4
-        newest = at + (first % 4 + i) // 4
-        real = np.float32(0.0)
-        imag = np.float32(0.0)
-        for k in range(taps.shape[0] // 4):
-            h = taps[4 * k + phase]
-            real = fma(h, quarter[0, newest - k], real)
-            imag = fma(h, quarter[1, newest - k], imag)
-        out[0, out_at + i] = real
-        out[1, out_at + i] = imag
+    for phase in range(4):
+        skip = (phase - first) % 4
+        n = (count - skip + 3) // 4
+        newest = at + (first % 4 + skip) // 4
+        for q in range(2):
+            total = line[: max(n, 0)]
+            total[:] = 0.0
+            for k in range(taps.shape[0] // 4):
+                h = taps[4 * k + phase]
+                values = quarter[q, newest - k : newest - k + n]
+                for i in range(n):
+                    total[i] = fma(h, values[i], total[i])
+            for i in range(n):
+                out[q, out_at + skip + 4 * i] = total[i]
 
 
 @compiled

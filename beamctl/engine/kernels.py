@@ -15,7 +15,7 @@ from math import ceil, floor
 import numpy as np
 
 from beamctl.acoustics.steering import path_lead_m
-from beamctl.engine.compiled import compiled, jitable
+from beamctl.engine.compiled import compiled, inlined, jitable
 from beamctl.engine.fused import fma
 from beamctl.engine.turning import turn
 from beamctl.show.glides import reach_at, travel_at
@@ -108,9 +108,13 @@ def _cell_phasors(scratch, cells, wanted, x, y, z, per_m, carrier_hz, slowness, 
     right, out, up, square = cells[0], cells[1], cells[2], cells[3]
     re, im, taus = scratch[0], scratch[1], scratch[2]
     w_re, w_im = wanted[0], wanted[1]
-    for n in range(right.shape[0]):
-        dot = right[n] * x + out[n] * y + up[n] * z
-        taus[n] = base_s + _path_lead_m(dot, square[n], per_m) * slowness
+    if per_m == 0.0:  # a plane wave: the same figure without the root and the division
+        for n in range(right.shape[0]):
+            taus[n] = base_s + (right[n] * x + out[n] * y + up[n] * z) * slowness
+    else:
+        for n in range(right.shape[0]):
+            dot = right[n] * x + out[n] * y + up[n] * z
+            taus[n] = base_s + _path_lead_m(dot, square[n], per_m) * slowness
     for n in range(right.shape[0]):
         c, s = turn(-carrier_hz * taus[n])
         re[n] = w_re[n] * c - w_im[n] * s
@@ -142,7 +146,7 @@ def sum_feeds(out, acc, carrier, rows, coef, active, pieces, ramp, row_at, begin
             feed[p] = fma(in_phase[p], cosine[p], -quadrature[p] * sine[p])
 
 
-@compiled
+@inlined
 def _add_beam(acc, rows, coef, f, ramp, row_at, piece, begin, end):
     """Add one beam to the sums of feed f."""
     segment = ramp.shape[0]
@@ -188,7 +192,7 @@ def _add_beam(acc, rows, coef, f, ramp, row_at, piece, begin, end):
         x = stop
 
 
-@compiled
+@inlined
 def _add_run(out_i, out_q, a_i, a_q, b_i, b_q, ramp, w0, w1, c0, s0, c1, s1, c2, s2):
     """One run of samples between the same two rows; everything float32 and contiguous."""
     for i in range(out_i.shape[0]):

@@ -131,10 +131,15 @@ class Outlet:
 
     # -- whoever plays ----------------------------------------------------------------------------
 
-    def pull(self, out: Block, now_ns: int = 0) -> None:
-        """Fill `out` (n, channels), C-contiguous, as a device callback would at `now_ns`."""
+    def pull(self, out: Block, now_ns: int = 0) -> int:
+        """Fill `out` (n, channels), C-contiguous, as a device callback would at `now_ns`.
+
+        Returns how many frames the ring had; what follows them is silence.
+        """
+        before = self.count(at.READ)
         final.note_time(self.memory, now_ns)
         final.pull(self.memory, out.reshape(-1), len(out))
+        return self.count(at.READ) - before
 
     def flow(self) -> None:
         """Let a ring flow that is not full yet."""

@@ -54,6 +54,7 @@ class Buffers(NamedTuple):
     still: NDArray[np.bool_]  # (B,) coef hold until the aim is touched
     piece: NDArray[np.int64]  # (B,) position in the segment from which coef count
     scratch: NDArray[np.float64]  # (3, N)
+    line: F32  # (65,) one phase of what is brought to the full rate
     acc: F32  # (2, 256) one feed's sums
     total: F32  # (256,) summed demands, then the shared gain
     carrier: F32  # (2, 256)
@@ -235,6 +236,7 @@ def _buffers(wiring: Wiring, feeds: int, rate_hz: int, beams: int) -> Buffers:
         still=np.zeros(beams, np.bool_),
         piece=np.zeros(beams, np.int64),
         scratch=np.zeros((3, wiring.cells.shape[1])),
+        line=f32(SEGMENT // 4 + 1),
         acc=f32(2, SEGMENT),
         total=np.ones(SEGMENT, np.float32),
         carrier=f32(2, SEGMENT),
@@ -398,4 +400,5 @@ def _make_full(buffers, wiring, b, sample, begin, end):
         q_history + begin // 4,
         wiring.raise_taps,
         begin,
+        buffers.line,
     )

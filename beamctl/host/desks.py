@@ -12,6 +12,8 @@ from typing import Any
 
 from beamctl.errors import DeviceError
 
+LONGEST_MESSAGE = 65_536  # bytes
+
 Answer = Callable[[bytes], None]
 Post = Callable[[dict[str, Any], Answer], None]
 
@@ -42,9 +44,9 @@ class Door:
         answers: queue.SimpleQueue[bytes] = queue.SimpleQueue()
         try:
             while True:
-                self._post(json.loads(connection.recv_bytes()), answers.put)
+                self._post(json.loads(connection.recv_bytes(LONGEST_MESSAGE)), answers.put)
                 connection.send_bytes(answers.get())
-        except (EOFError, OSError, ValueError):
+        except (EOFError, OSError, ValueError, RecursionError):
             connection.close()
 
 

@@ -198,8 +198,11 @@ class Engine:
         status["rendered"] = renderer.position
 
     def _shut(self) -> None:
-        """Leave by the ramp: the last samples that go out are zeros."""
+        """Leave by the ramp, and by a quantum of zeros after it."""
         self._outlet.hush()
         until = time.monotonic() + SHUT_S
         while self._outlet.gate_gain > 0.0 and time.monotonic() < until:
+            self._render_or_wait()
+        zeros_to = self._outlet.count(at.READ) + self._quantum
+        while self._outlet.count(at.READ) < zeros_to and time.monotonic() < until:
             self._render_or_wait()

@@ -60,6 +60,7 @@ class Host:
         self._drift = Drift(self.show.rig.rate_hz)
         self._busy = "starting"
         self._left: dict[str, Any] | None = None
+        self._gone = False  # the engine's line has ended, and all it said was heard
         self._stopping = False
         self._failure: BeamctlError | None = None
         self._opened_once = False
@@ -156,11 +157,14 @@ class Host:
             self._left = message["left"]
         elif "lost" in message:
             self._sink_lost(message)
-        elif "gone" in message and not self._stopping:
-            self._engine_gone()
+        elif "gone" in message:
+            self._gone = True
+            if not self._stopping:
+                self._engine_gone()
 
     def _engine_ready(self, ready: dict[str, Any]) -> None:
         self._busy, self._opened_once, self._left = "", True, None
+        self._gone = False
         self._drift = Drift(self.show.rig.rate_hz)
         start = self._keeper.opened(ready)
         self._write([Record(start, "stream", args=ready)])
@@ -278,7 +282,7 @@ class Host:
         self._stopping = True
         self._keeper.send({"stop": True})
         until = time.monotonic() + STOP_S
-        while self._left is None and self._keeper.alive() and time.monotonic() < until:
+        while self._left is None and not self._gone and time.monotonic() < until:
             self._renew_lease()
             self._take(TICK_S)
         self._take(0.0)

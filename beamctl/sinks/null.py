@@ -21,7 +21,7 @@ class ClockedSink:
 
     Pull k is due at start + k · period / rate by `clock`, so that rounding in sleeps never adds up.
     After a hold-up it pulls what it owes, one period after the other: no frame is skipped or
-    repeated, and the samples that left keep step with the clock.
+    repeated. Silence for want of frames is not kept, so that sample k is frame k of the stream.
     """
 
     route = "clock"
@@ -54,7 +54,7 @@ class ClockedSink:
         return self._hash.hexdigest()
 
     def keep(self, block: Block) -> None:
-        """Have (period, channels) leave; the block is used again. Raises DeviceError to end it."""
+        """Have (n, channels) leave; the block is used again. Raises DeviceError to end it."""
         self._hash.update(block.data)
 
     def close(self) -> None:
@@ -75,8 +75,8 @@ class ClockedSink:
                 if self._ended.is_set() or self.trouble is not None:
                     return
                 # the time of the system, whatever the clock: a device's drift shows against it
-                self._outlet.pull(block, time.monotonic_ns())
-                self.keep(block)
+                taken = self._outlet.pull(block, time.monotonic_ns())
+                self.keep(block[:taken])
         except DeviceError as error:
             self.trouble = self.trouble or error
 

@@ -34,8 +34,11 @@ class Outlet(Protocol):
     @property
     def frames(self) -> int: ...
 
-    def pull(self, out: Block, now_ns: int) -> None:
-        """Fill `out` (n, channels), C-contiguous, full scale ±1; asked at `now_ns`."""
+    def pull(self, out: Block, now_ns: int) -> int:
+        """Fill `out` (n, channels), C-contiguous, full scale ±1; asked at `now_ns`.
+
+        Returns how many of the frames there were; what follows them is silence.
+        """
         ...
 
 

@@ -41,7 +41,7 @@ def c_way(panel: Panel, start: float) -> Callable[[], np.ndarray]:
             x, y, z, distance = travel_at(b.aim[i], sample)
             aims[i, step] = x, y, z, reach_at(b.reach[i], sample, distance)
     coef, delay = np.zeros((feeds, 6)), np.zeros((feeds, 3))
-    acc, out = np.zeros_like(b.acc), np.zeros_like(b.out)
+    acc, out = np.zeros((2, *b.out.shape), np.float32), np.zeros_like(b.out)
     rows[:] = b.rows
     taps = np.ascontiguousarray(w.row_taps)
     kept: list[Any] = [rows, base, aims, coef, delay, acc, out, taps]

@@ -200,7 +200,7 @@ def rendered(show: Show, streams: list[Stream]) -> Samples:
 
 
 def replayed(journal: Path) -> str:
-    """The SHA-256 that `beamctl replay` prints, which must exit with 0 and find the same samples."""
+    """The SHA-256 that `beamctl replay` prints, which must exit with 0 and find them equal."""
     done = beamctl("replay", journal)
     assert done.returncode == 0, done.stdout + done.stderr
     assert done.stdout.count("the same samples") == len(done.stdout.splitlines()) == 1, done.stdout

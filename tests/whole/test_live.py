@@ -226,11 +226,11 @@ def test_a_signal_ends_the_host_by_a_ramp(show: Path, tmp_path: Path, how: signa
     closing = told(journal, "gate")[-1]
     assert (closing.args["open"], closing.args["n"]) == (0, RAMP)
     assert records_of(journal)[-1].args["read"] == len(samples)
+    assert len(samples) > closing.sample + RAMP
+    assert not samples[closing.sample + RAMP :].any()
     unclosed = rendered_without(journal, closing)
     np.testing.assert_array_equal(samples[: closing.sample], unclosed[: closing.sample])
     assert np.abs(unclosed[closing.sample + RAMP :]).max() > 0.001, "the cue was over already"
-    assert not samples[closing.sample + RAMP :].any()
-    assert len(samples) > closing.sample + RAMP
 
     sounding = np.abs(unclosed[closing.sample : closing.sample + RAMP]) > 0.001
     window = slice(closing.sample, closing.sample + RAMP)
