@@ -49,7 +49,8 @@ def main() -> None:
       beamctl desk scenes/night-tram
       beamctl render scenes/night-tram --go 1@0.5 --for 6 -o tram.wav
 
-    Exit codes: 0 done, 1 warnings or a failed check, 2 errors in the show, 4 the machine.
+    Exit codes: 0 done, 1 warnings or a failed check, 2 errors in the show, 4 the machine,
+    6 a sink that does not offer what the rig needs.
     """
 
 

@@ -42,8 +42,10 @@ def wait_for(condition: Callable[[], bool], what: str, timeout_s: float = 20.0) 
 
 
 @contextmanager
-def jack_server(rate: int, period: int, capture: int, playback: int) -> Iterator[JackServer]:
-    """Run jackd with its dummy driver under a name of its own; this process finds it too.
+def jack_server(
+    rate: int, period: int, capture: int, playback: int, name: str | None = None
+) -> Iterator[JackServer]:
+    """Run jackd with its dummy driver, by default under a new name; this process finds it too.
 
     No real-time scheduling and no locked memory, so that it runs in a container; synchronous, so
     that a late client delays a period instead of losing it. Skips the test, with the reason, where
@@ -55,7 +57,7 @@ def jack_server(rate: int, period: int, capture: int, playback: int) -> Iterator
         if os.environ.get("CI") == "true":
             pytest.fail(reason)
         pytest.skip(reason)
-    name = f"beamctl-test-{os.getpid()}-{next(_numbers)}"
+    name = name or f"beamctl-test-{os.getpid()}-{next(_numbers)}"
     # fmt: off
     command = [
         "jackd", "-n", name, "-r", "-m", "-S", "-d", "dummy",

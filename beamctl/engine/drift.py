@@ -1,4 +1,7 @@
-"""Drift of the device's clock against the system's, from when it asked for which frame."""
+"""Drift of the device's clock against the system's, from when it asked for which frame.
+
+The time is the system's own, taken by whoever looks: the clock that a device tells may be its own.
+"""
 
 from __future__ import annotations
 
@@ -8,27 +11,30 @@ from dataclasses import dataclass, field
 import numpy as np
 
 WINDOW_S = 120.0
-LEAST_S = 10.0
+LEAST_S = 20.0
+SPACING_S = 0.05
 
 
 @dataclass
 class Drift:
-    """Least squares over the last two minutes of (time, frame) pairs of callbacks."""
+    """Least squares over the last two minutes of (time, frame) pairs."""
 
     rate_hz: int
     _marks: deque[tuple[int, int]] = field(default_factory=deque)
 
     def note(self, now_ns: int, frame: int) -> None:
-        """The device asked for `frame` at `now_ns`, both growing."""
-        if self._marks and now_ns <= self._marks[-1][0]:
-            return
+        """At `now_ns` the device had asked for `frame` last; a frame seen before says nothing."""
+        if self._marks:
+            last_ns, last_frame = self._marks[-1]
+            if now_ns - last_ns < SPACING_S * 1e9 or frame <= last_frame:
+                return
         self._marks.append((now_ns, frame))
         while now_ns - self._marks[0][0] > WINDOW_S * 1e9:
             self._marks.popleft()
 
     @property
     def ppm(self) -> float | None:
-        """How much faster the device is than the system's clock; None before ten seconds."""
+        """How much faster the device is than the system's clock; None before twenty seconds."""
         if len(self._marks) < 8:
             return None
         marks = np.array(self._marks, np.int64)

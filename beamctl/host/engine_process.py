@@ -35,7 +35,12 @@ from beamctl.engine.renderer import Renderer
 from beamctl.errors import BeamctlError, DeviceError
 from beamctl.files.reader import load_show
 from beamctl.host.loading import prepare_sounds
-from beamctl.host.priority import ask_for_real_time, ring_ms_for
+from beamctl.host.priority import (
+    RENDER_PRIORITY,
+    ask_for_real_time,
+    be_ordinary,
+    ring_ms_for,
+)
 from beamctl.host.quiet import send_native_chatter_to
 from beamctl.host.status import Status
 from beamctl.host.warming import warm
@@ -62,6 +67,7 @@ def engine_main(connection: Connection, task: Task) -> None:
     """Entry point of the process; returns when the host said stop, or went away."""
     send_native_chatter_to(Path(task.log))
     sys.setswitchinterval(0.0005)
+    be_ordinary()  # loading and compiling are in nobody's way
     try:
         Engine(connection, task).run()
     except BeamctlError as error:
@@ -88,7 +94,7 @@ class Engine:
         self._progress("compiled code", 0, 1)
         warm(show)
         compile_s = time.monotonic() - started
-        priority = ask_for_real_time()
+        priority = ask_for_real_time(RENDER_PRIORITY)
         rig = show.rig
         ring_ms = ring_ms_for(rig.ring_ms, priority)
         self._start = task.start

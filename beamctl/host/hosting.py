@@ -28,6 +28,7 @@ from beamctl.host.keeper import Keeper
 from beamctl.host.link import encode
 from beamctl.host.picture import Picture
 from beamctl.host.places import new_journal, socket_address
+from beamctl.host.priority import HOST_PRIORITY, ask_for_real_time
 from beamctl.show.events import Acknowledge, Event
 from beamctl.show.player import Player
 from beamctl.show.records import FINAL, Record
@@ -47,6 +48,7 @@ class Host:
 
     def __init__(self, folder: Path, sink: str, journal: Path | None = None) -> None:
         self.show = load_show(folder)
+        ask_for_real_time(HOST_PRIORITY)
         self._inbox: queue.SimpleQueue[Callable[[], None]] = queue.SimpleQueue()
         self._door = Door(socket_address(folder), folder, self._from_desk)
         now = datetime.now().astimezone()
@@ -120,7 +122,7 @@ class Host:
         if (outlet := self._keeper.outlet) is not None:
             life = round(LEASE_S * self.show.rig.rate_hz)
             outlet.grant(outlet.count(at.READ) + life, self._ratings)
-            self._drift.note(outlet.count(at.LAST_NS), outlet.count(at.LAST_READ))
+            self._drift.note(time.monotonic_ns(), outlet.count(at.LAST_READ))
 
     def _tell_final_stage(self) -> None:
         """Put into the journal what the final stage did, and act on what nobody asked for."""

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import contextlib
 import json
+import os
 import subprocess
 import sys
 import threading
@@ -26,6 +27,7 @@ from beamctl.engine.panel import SEGMENT
 from beamctl.host.engine_process import Task, engine_main
 from beamctl.host.link import encode
 from beamctl.host.places import memory_folder, show_key, state_folder
+from beamctl.host.priority import be_ordinary
 from beamctl.host.status import Status
 from beamctl.show.show import Show
 
@@ -156,7 +158,11 @@ class Keeper:
             self._look_at = now + LOOK_S
             command = [sys.executable, "-m", "beamctl", "sinks", "--json"]
             self._looking = subprocess.Popen(
-                command, stdout=subprocess.PIPE, stderr=subprocess.DEVNULL, stdin=subprocess.DEVNULL
+                command,
+                stdout=subprocess.PIPE,
+                stderr=subprocess.DEVNULL,
+                stdin=subprocess.DEVNULL,
+                preexec_fn=be_ordinary if os.name == "posix" else None,
             )
         return None
 

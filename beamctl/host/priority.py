@@ -1,23 +1,35 @@
-"""Real-time priority for the thread that renders: asked for, and told as it was answered."""
+"""Real-time priority for what must never be late: asked for, and told as it was answered."""
 
 from __future__ import annotations
 
+import contextlib
 import os
 
-PRIORITY = 20  # above everything ordinary, below a sound server's own threads (common practice)
+RENDER_PRIORITY = 20  # above everything ordinary, below a sound server (common practice)
+HOST_PRIORITY = 10  # it renews the lease; all its threads, or one would wait for another's lock
 RING_MS_REAL_TIME = 12.0
 RING_MS_ORDINARY = 32.0
 
 
-def ask_for_real_time() -> str:
-    """Raise the calling thread to first-in first-out scheduling; "real-time 20", or "ordinary"."""
-    if not hasattr(os, "sched_setscheduler"):
+def ask_for_real_time(priority: int) -> str:
+    """Raise the calling thread to first-in first-out scheduling; "real-time 20", or "ordinary".
+
+    Threads and processes that it starts later inherit that. BEAMCTL_PRIORITY=ordinary does not ask.
+    """
+    if os.environ.get("BEAMCTL_PRIORITY") == "ordinary" or not hasattr(os, "sched_setscheduler"):
         return "ordinary"
     try:
-        os.sched_setscheduler(0, os.SCHED_FIFO, os.sched_param(PRIORITY))
+        os.sched_setscheduler(0, os.SCHED_FIFO, os.sched_param(priority))
     except OSError:
         return "ordinary"
-    return f"real-time {PRIORITY}"
+    return f"real-time {priority}"
+
+
+def be_ordinary() -> None:
+    """Back to ordinary scheduling, for what may take long."""
+    if hasattr(os, "sched_setscheduler"):
+        with contextlib.suppress(OSError):
+            os.sched_setscheduler(0, os.SCHED_OTHER, os.sched_param(0))
 
 
 def ring_ms_for(asked_ms: float | None, priority: str) -> float:

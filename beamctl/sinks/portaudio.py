@@ -12,7 +12,7 @@ from typing import Any, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from beamctl.errors import DeviceError
+from beamctl.errors import ContractError, DeviceError
 from beamctl.sinks.sink import SinkInfo
 
 _JACK, _ALSA = "JACK Audio Connection Kit", "ALSA"
@@ -67,13 +67,13 @@ def check(device: Device, rate_hz: int, channels: int) -> None:
     where = _WHERE.get(info.host_api, _WHERE_ELSE)
     needed = f"{_full_name(info)}: needed {channels} channels at {rate_hz} Hz"
     if info.channels < channels:
-        raise DeviceError(f"{needed}, offered {info.channels} channels", where)
+        raise ContractError(f"{needed}, offered {info.channels} channels", where)
     library = _library()
     try:
         library.check_output_settings(**_settings(device, rate_hz, channels))
     except library.PortAudioError as error:
         offered = f"offered {info.default_rate_hz:.0f} Hz by default"
-        raise DeviceError(f"{needed}, {offered} ({_reason(error)})", where) from error
+        raise ContractError(f"{needed}, {offered} ({_reason(error)})", where) from error
 
 
 def open_callback(

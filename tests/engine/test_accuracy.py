@@ -54,9 +54,7 @@ def test_error_to_direct_evaluation(law, depth, tone_hz, bar_db, moving):
     renderer, out = rendered(law, depth, tone_hz, moving, columns=32, q=5.0)
     window = np.arange(16_000, 20_000)
     panel = renderer.panels["p"]
-    wanted = direct_feeds(
-        panel, panel.states[0], window, tone_hz, START, law, depth, 0.5
-    )
+    wanted = direct_feeds(panel, panel.states[0], window, tone_hz, START, law, depth, 0.5)
     assert np.abs(wanted).max() > 0.2  # the comparison is about something
     error_db = 20.0 * np.log10(np.abs(out[window].T - wanted).max())
     print(law, tone_hz, moving, error_db)

@@ -7,6 +7,7 @@ import pty
 import select
 import signal
 import subprocess
+import termios
 import threading
 import time
 from collections.abc import Callable, Iterable, Iterator
@@ -191,34 +192,31 @@ def watched(pid: int) -> Iterator[Watched]:
 
 
 class Desk:
-    """A desk that has joined a host, on a terminal that is read until it is told to freeze."""
+    """A desk that has joined a host, on a terminal that is read, or that nobody ever reads."""
 
-    def __init__(self, show: Path, frozen: bool = False) -> None:
-        self._ours, theirs = pty.openpty()
+    def __init__(self, show: Path, frozen: bool) -> None:
+        self._ours, self._theirs = pty.openpty()
+        termios.tcsetwinsize(self._ours, (60, 200))
         self.process = subprocess.Popen(
             [*COMMAND, "desk", str(show)],
-            stdin=theirs,
-            stdout=theirs,
-            stderr=theirs,
+            stdin=self._theirs,
+            stdout=self._theirs,
+            stderr=self._theirs,
             start_new_session=True,
         )
-        os.close(theirs)
         self.shown = bytearray()
         if not frozen:
             threading.Thread(target=self._read, daemon=True).start()
 
-    def waits_for_its_terminal(self) -> bool:
-        """True when a thread of the desk is blocked because nobody takes what it writes."""
-        for thread in Path(f"/proc/{self.process.pid}/task").iterdir():
-            if "tty" in (thread / "wchan").read_text():
-                return True
-        return False
+    def is_blocked(self) -> bool:
+        """True when the terminal takes nothing more, so that whoever writes to it waits."""
+        return not select.select([], [self._theirs], [], 0.0)[1]
 
     def end(self) -> None:
         """Kill what is left of it."""
         self.process.kill()
         self.process.wait(SOON_S)
-        os.close(self._ours)
+        os.close(self._theirs)
 
     def _read(self) -> None:
         try:
@@ -234,7 +232,7 @@ def desk(show: Path, frozen: bool = False) -> Iterator[Desk]:
     found = Desk(show, frozen)
     try:
         if frozen:
-            wait_for(found.waits_for_its_terminal, "the desk to be blocked in writing", STARTS_S)
+            wait_for(found.is_blocked, "the desk to be blocked in writing", STARTS_S)
         else:
             wait_for(lambda: TITLE.encode() in found.shown, "the desk to show the sheet", STARTS_S)
         yield found
@@ -264,9 +262,10 @@ class Stage:
         journal = self.running.journal
         wait_for(lambda: len(told(journal, "aim")) == 2, "the travel in the journal")
         self.running.pass_by(0.1)
+        self.outlet.events()  # the host has written these
 
     def final_records(self) -> list[Record]:
-        """What the final stage did since it was joined, as a host that lives writes it."""
+        """What the final stage did since the cue was played, as a host that lives writes it."""
         found = []
         for event in self.outlet.events():
             if event.name == "dry":
