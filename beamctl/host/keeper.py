@@ -31,7 +31,8 @@ from beamctl.host.priority import be_ordinary
 from beamctl.host.status import Status
 from beamctl.show.show import Show
 
-STALL_S = 0.12  # without a beat of the render thread: then the process is killed
+STALL_S = 0.12  # without a beat of the render thread: then the process is killed …
+STARVED_S = 0.5  # … but later where it would run, and only gets no turn
 DEATHS, DEATHS_S = 3, 60.0
 LOOK_S = 2.0
 
@@ -120,7 +121,8 @@ class Keeper:
         """Kill an engine that stalls; True when it was killed now."""
         if not self.ready or not self._process.is_alive():
             return False
-        if time.monotonic_ns() - self.status["beat_ns"] < STALL_S * 1e9:
+        silent_s = (time.monotonic_ns() - self.status["beat_ns"]) * 1e-9
+        if silent_s < STALL_S or (silent_s < STARVED_S and _starved(self.pid)):
             return False
         self._process.kill()
         self.ready = {}
@@ -184,6 +186,14 @@ class Keeper:
         for path in (self._outlet_path, self._status_path):
             with contextlib.suppress(OSError):
                 path.unlink(missing_ok=True)
+
+
+def _starved(pid: int) -> bool:
+    """True when the process waits for nothing but a processor; False where that cannot be seen."""
+    try:
+        return Path(f"/proc/{pid}/stat").read_bytes().rpartition(b")")[2].split()[0] == b"R"
+    except (OSError, IndexError):
+        return False
 
 
 def _names(listing: bytes) -> list[str]:
