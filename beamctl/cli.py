@@ -81,6 +81,8 @@ def desk(show: Path, sink: str, journal: Path | None, plain: bool) -> None:
             link.stop_host()
             host.wait(HOST_STARTS_S)
     link.close()
+    if host is not None and host.poll() not in (None, 0):
+        raise _said_by_host(host.returncode)
     sys.exit(code)
 
 
@@ -99,6 +101,9 @@ def host(show: Path, sink: str, journal: Path | None, stop: bool) -> None:
         if not _answers(link):
             raise DeviceError(f"no host runs {show}", "nothing to end")
         link.stop_host()
+        until = time.monotonic() + HOST_STARTS_S
+        while _answers(link) and time.monotonic() < until:
+            time.sleep(0.05)
         return
     running = Host(show, sink, journal)
     for number in (signal.SIGINT, signal.SIGTERM):
@@ -170,6 +175,8 @@ def render(
     found = load_show(show)
     rate_hz = found.rig.rate_hz
     samples = _moment(length, rate_hz)
+    if journal is not None and journal.exists():
+        raise DeviceError(f"journal {journal} exists", "name another with --journal")
     asked = []
     for go in gos:
         ref, at, moment = go.rpartition("@")
@@ -302,10 +309,20 @@ def _start_host(show: Path, sink: str, journal: Path | None, link: Any) -> subpr
     until = time.monotonic() + HOST_STARTS_S
     while not _answers(link):
         if process.poll() is not None or time.monotonic() > until:
-            said = log.read_text(errors="replace").strip().splitlines()
-            raise DeviceError(
-                f"the host did not start: {said[0] if said else 'it said nothing'}",
-                said[1].strip() if len(said) > 1 else f"its log is {log}",
-            )
+            raise _said_by_host(process.poll())
         time.sleep(0.05)
     return process
+
+
+def _said_by_host(code: int | None) -> DeviceError:
+    """What a host that ended by itself left in its log."""
+    from beamctl.host.places import state_folder
+
+    log = state_folder() / "host.log"
+    code = code if code and code > 0 else DeviceError.exit_code  # below 0: killed by a signal
+    said = [line for line in log.read_text(errors="replace").splitlines() if line.strip()]
+    told = [i for i, line in enumerate(said) if line.startswith("beamctl: ")]
+    if not told:
+        return DeviceError("the host ended and said nothing", f"its log is {log}", code)
+    what = said[told[-1]].removeprefix("beamctl: ")
+    return DeviceError(what, " ".join(line.strip() for line in said[told[-1] + 1 :]), code)

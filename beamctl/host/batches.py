@@ -25,10 +25,15 @@ class Batch:
 
 
 class Batches:
-    """`write` gets records once they are certain."""
+    """`write` gets records once they are certain; `moved` is told of those that came late."""
 
-    def __init__(self, write: Callable[[Iterable[Record]], None]) -> None:
+    def __init__(
+        self,
+        write: Callable[[Iterable[Record]], None],
+        moved: Callable[[Iterable[Record], int], None],
+    ) -> None:
         self._write = write
+        self._moved = moved
         self._waiting: deque[Batch] = deque()
         self._number = 0
 
@@ -46,10 +51,17 @@ class Batches:
         self._waiting.append(Batch(self._number, records, not sounding))
         self._flush()
 
+    @property
+    def open(self) -> bool:
+        """True while a batch is on its way."""
+        return any(not batch.certain for batch in self._waiting)
+
     def settle(self, number: int, moved: int) -> None:
         """The engine took batch `number`, `moved` samples later than asked."""
         for batch in self._waiting:
             if batch.number == number:
+                if moved:
+                    self._moved(batch.records, moved)
                 batch.records = [r.later(moved) for r in batch.records]
                 batch.certain = True
         self._flush()

@@ -172,7 +172,7 @@ class Engine:
         self._status["beat_ns"] = time.monotonic_ns()
         if self._outlet.room < self._quantum:
             self._watch_sink()
-            time.sleep(self._quantum / self._renderer.rate_hz / 4.0)
+            time.sleep(self._quantum / self._renderer.rate_hz / 2.0)
             return
         began = time.perf_counter_ns()
         self._renderer.render(self._block)

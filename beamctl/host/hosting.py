@@ -57,7 +57,7 @@ class Host:
         self._player = Player(self.show)
         self._picture = Picture(self.show)
         self._notices: deque[str] = deque(maxlen=100)
-        self._batches = Batches(self._write)
+        self._batches = Batches(self._write, self._player.moved)
         self._ratings = [wire.rating for wire in wires_of(self.show)]
         self._drift = Drift(self.show.rig.rate_hz)
         self._busy = "starting"
@@ -104,8 +104,9 @@ class Host:
         if self._player.output in ("SHUT", "OPEN", "HUSHED"):
             self._renew_lease()
             self._tell_final_stage()
-            ahead = round(AHEAD_S * self.show.rig.rate_hz)
-            self._send(self._player.advance(self._now() + ahead))
+            if not self._batches.open:  # what hangs on a GO waits until its sample is certain
+                ahead = round(AHEAD_S * self.show.rig.rate_hz)
+                self._send(self._player.advance(self._now() + ahead))
             self._count()
         elif (names := self._keeper.look()) is not None and self._sink not in names:
             self._notice(f"needed {self._sink}, offered {', '.join(names) or 'no device'}")

@@ -8,7 +8,7 @@ beam; a refusal is a record too, with its reason.
 from __future__ import annotations
 
 from collections import deque
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
 from functools import partial
 from typing import Any
@@ -121,6 +121,20 @@ class Player:
             for plan in self.plans.values():
                 records += plan.set_up(sample)
         return records
+
+    def moved(self, records: Iterable[Record], by: int) -> None:
+        """The engine took these records `by` samples late: what hangs on them moves along."""
+        for ref in {record.cue for record in records if record.cue in self.runs}:
+            run = self.runs[ref]
+            run.started += by
+            run.settles_at += by
+            run.acts = deque((at + by, act) for at, act in run.acts)
+            run.follow = run.follow and (run.follow[0] + by, run.follow[1])
+            if ref == self.newest and self.newest_at is not None:
+                self.newest_at += by
+            for plan in self.plans.values():
+                if plan.owner == ref and plan.ends_at is not None:
+                    plan.ends_at += by
 
     def _cut(self, sample: int) -> None:
         self.ready_until, self.held_at = -1, None

@@ -291,3 +291,20 @@ def test_an_event_comes_after_what_was_due_before_it() -> None:
         (at(1.0), "level"),
         (at(2.0), "freeze"),
     ]
+
+
+def test_what_hangs_on_a_go_moves_with_it() -> None:
+    """The engine took a GO late: later acts, the follow-on and the sound's end are as late."""
+    cues = (
+        cue(
+            "1", one_shot(), {"at_s": 0.5, "beam": "a", "azimuth_deg": 3.0}, then="2", then_at_s=2.0
+        ),
+        cue("2", loop("b")),
+    )
+    plain, late = (player(*cues) for _ in range(2))
+    plain.handle(events.Go(ref="1"), 1000)
+    late.moved(late.handle(events.Go(ref="1"), 1000), 256)
+    expected = [r.later(256) for r in plain.advance(at(5.0))]
+    assert "go" in whats(expected)
+    assert late.advance(at(5.0) + 256) == expected
+    assert late.runs["2"].started == plain.runs["2"].started + 256

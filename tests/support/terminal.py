@@ -15,7 +15,6 @@ from support.running import COMMAND, STARTS_S, need, wait_for
 
 from beamctl.desk import glyphs
 
-_numbers = itertools.count(1)
 MODES = (
     "#{cursor_flag} #{alternate_on} #{keypad_flag} #{insert_flag} #{wrap_flag} #{mouse_any_flag}"
 )
@@ -86,7 +85,7 @@ class Terminal:
 
     def _tmux(self, *arguments: str) -> str:
         return subprocess.run(
-            ["tmux", "-L", self._server, *arguments],
+            ["tmux", "-S", self._server, *arguments],
             check=True,
             capture_output=True,
             text=True,
@@ -98,10 +97,10 @@ class Terminal:
 def terminal(folder: Path) -> Iterator[Terminal]:
     """A terminal whose server is gone when the block is left."""
     need("tmux")
-    server = f"beamctl-test-{os.getpid()}-{next(_numbers)}"
+    server = str(Path(os.environ["BEAMCTL_RUNTIME"]) / "tmux")
     start = ["new-session", "-d", "-x", "120", "-y", "40", "sh"]
-    subprocess.run(["tmux", "-L", server, "-f", os.devnull, *start], check=True, timeout=20.0)
+    subprocess.run(["tmux", "-S", server, "-f", os.devnull, *start], check=True, timeout=20.0)
     try:
         yield Terminal(server, folder)
     finally:
-        subprocess.run(["tmux", "-L", server, "kill-server"], check=False, timeout=20.0)
+        subprocess.run(["tmux", "-S", server, "kill-server"], check=False, timeout=20.0)
