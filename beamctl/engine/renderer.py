@@ -13,7 +13,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from beamctl.acoustics.air import Air
-from beamctl.engine.panel import SEGMENT, Panel, interleave
+from beamctl.engine.buffers import SEGMENT
+from beamctl.engine.panel import Panel, interleave
 from beamctl.show import glides
 from beamctl.show.records import SOUNDING, Record
 from beamctl.show.show import Show

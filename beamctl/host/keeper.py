@@ -22,8 +22,8 @@ from pathlib import Path
 from typing import Any
 
 from beamctl.engine import layout as at
+from beamctl.engine.buffers import SEGMENT
 from beamctl.engine.outlet import Outlet
-from beamctl.engine.panel import SEGMENT
 from beamctl.host.engine_process import Task, engine_main
 from beamctl.host.link import encode
 from beamctl.host.places import memory_folder, show_key, state_folder

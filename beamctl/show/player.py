@@ -20,6 +20,7 @@ from beamctl.show import events
 from beamctl.show.beamstate import MIN_GLIDE_S, BeamState
 from beamctl.show.plan import BeamPlan, swing_of
 from beamctl.show.records import Record
+from beamctl.show.run import Run
 from beamctl.show.sheet import Act, Cue
 from beamctl.show.show import Show
 from beamctl.show.standby import after_go, stepped
@@ -29,26 +30,6 @@ from beamctl.show.targets import Target, target_of
 READY_S = 5.0
 RESTORE_RISE_S = 0.25
 TOKENS_KEPT = 4096
-
-
-@dataclass(slots=True)
-class Run:
-    """A fired cue: what it still has to do, by absolute sample."""
-
-    ref: str
-    started: int
-    acts: deque[tuple[int, Act]]
-    follow: tuple[int, str] | None
-    settles_at: int  # when the last glide it started is over
-    frozen: int = 0  # samples of those glides that were left when the show was held
-
-    def lasts(self, sample: int) -> None:
-        """It is not done before `sample`."""
-        self.settles_at = max(self.settles_at, sample)
-
-    def due(self) -> int | None:
-        """Sample of the next act."""
-        return self.acts[0][0] if self.acts else None
 
 
 @dataclass

@@ -13,7 +13,8 @@ from typing import Any
 import numpy as np
 
 from beamctl.engine import kernels
-from beamctl.engine.panel import SEGMENT, Panel
+from beamctl.engine.buffers import SEGMENT
+from beamctl.engine.panel import Panel
 from beamctl.show.glides import reach_at, travel_at
 
 FLAGS = ("-O3", "-march=native", "-ffast-math", "-shared", "-fPIC")

@@ -29,7 +29,8 @@ from bench.c_kernel import c_way, compiler
 from support.rigs import analytic_tone, grid, make_show
 
 from beamctl.engine import envelopes, kernels, sharing
-from beamctl.engine.panel import SEGMENT, Panel
+from beamctl.engine.buffers import SEGMENT
+from beamctl.engine.panel import Panel
 from beamctl.engine.renderer import Renderer
 from beamctl.files.reader import load_show
 from beamctl.host import offline

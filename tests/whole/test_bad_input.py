@@ -142,9 +142,7 @@ def test_a_folder_that_is_not_there_is_said(tmp_path: Path) -> None:
     assert not list(tmp_path.iterdir())
 
 
-def refused_sink(
-    show: Path, sink: str, code: int, env: dict[str, str] | None = None
-) -> list[str]:
+def refused_sink(show: Path, sink: str, code: int, env: dict[str, str] | None = None) -> list[str]:
     """What `host` says of a sink that it cannot have; it must end by itself, with `code`."""
     done = subprocess.run(
         [*COMMAND, "host", str(show), "--sink", sink],
