@@ -118,6 +118,9 @@ class DeskApp(App[int], inherit_bindings=False):
         self._answer_until_s = self._courier.clock() + ANSWER_S
 
     def _tick(self) -> None:
+        if not self.is_headless and not os.isatty(0):
+            self.exit(0)  # its terminal is gone without a hang-up: it would spin on nothing
+            return
         self._courier.ask_picture()
         while (news := self._courier.take_answer()) is not None:
             self._tell(*news)
