@@ -152,7 +152,9 @@ def _moment(text: str, rate_hz: int) -> int:
 @SHOW
 @click.option("--go", "gos", multiple=True, metavar="REF@S", help="Fire cue REF at S; repeatable.")
 @click.option("--for", "length", required=True, metavar="S", help="How long to render.")
-@click.option("-o", "--output", "output", required=True, type=click.Path(path_type=Path))
+@click.option(
+    "-o", "--output", required=True, type=click.Path(path_type=Path), help="The RF64 file."
+)
 @click.option("--journal", type=click.Path(path_type=Path), help="Keep the records too.")
 @click.option("--json", "as_json", is_flag=True, help="Machine-readable summary.")
 def render(
@@ -166,7 +168,8 @@ def render(
     """Render every feed of SHOW to an RF64 file, faster than real time.
 
     S is seconds, 3.5, or samples, 672000smp. The same player and renderer as live, without a clock:
-    the file holds, sample for sample, what the sink would have been given.
+    the file holds, sample for sample, what the sink would have been given. No exposure watchdog is
+    in this version: it is what the sheet asks for, within the ratings of the rig.
     """
     from beamctl.host import offline
     from beamctl.host.journal import Journal
