@@ -43,13 +43,19 @@ def wait_for(condition: Callable[[], bool], what: str, timeout_s: float = 20.0) 
 
 @contextmanager
 def jack_server(
-    rate: int, period: int, capture: int, playback: int, name: str | None = None
+    rate: int,
+    period: int,
+    capture: int,
+    playback: int,
+    name: str | None = None,
+    synchronous: bool = True,
 ) -> Iterator[JackServer]:
     """Run jackd with its dummy driver, by default under a new name; this process finds it too.
 
     No real-time scheduling and no locked memory, so that it runs in a container; synchronous, so
-    that a late client delays a period instead of losing it. Skips the test, with the reason, where
-    JACK is not installed; fails it there under CI=true.
+    that a late client delays a period instead of losing it: such a server waits ten seconds for a
+    client that died. Skips the test, with the reason, where JACK is not installed; fails it there
+    under CI=true.
     """
     missing = [tool for tool in TOOLS if shutil.which(tool) is None]
     if missing:
@@ -60,7 +66,7 @@ def jack_server(
     name = name or f"beamctl-test-{os.getpid()}-{next(_numbers)}"
     # fmt: off
     command = [
-        "jackd", "-n", name, "-r", "-m", "-S", "-d", "dummy",
+        "jackd", "-n", name, "-r", "-m", *(["-S"] if synchronous else []), "-d", "dummy",
         "-r", str(rate), "-p", str(period), "-C", str(capture), "-P", str(playback),
     ]
     # fmt: on

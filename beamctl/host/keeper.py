@@ -131,6 +131,7 @@ class Keeper:
     def died(self) -> bool:
         """Count a death and start the next engine; False when there were too many."""
         self.ready = {}
+        self.status.meters[:] = 0.0  # what it sent is over
         now = time.monotonic()
         self._deaths.append(now)
         if len(self._deaths) == DEATHS and now - self._deaths[0] < DEATHS_S:
@@ -141,6 +142,7 @@ class Keeper:
     def look_for_sink(self) -> None:
         """From now on look for the lost sink, until it is there and an engine is started for it."""
         self.ready = {}
+        self.status.meters[:] = 0.0
         self._look_at = time.monotonic() + LOOK_S
 
     def look(self) -> list[str] | None:
@@ -186,6 +188,8 @@ class Keeper:
         for path in (self._outlet_path, self._status_path):
             with contextlib.suppress(OSError):
                 path.unlink(missing_ok=True)
+        with contextlib.suppress(OSError):  # other hosts may still use it
+            memory_folder().rmdir()
 
 
 def _starved(pid: int) -> bool:

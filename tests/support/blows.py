@@ -1,4 +1,4 @@
-"""Blows to the processes of a running show, and what left its output around them."""
+"""Blows to the processes of a running show, and what its output must be around them."""
 
 from __future__ import annotations
 
@@ -11,16 +11,15 @@ import subprocess
 import termios
 import threading
 import time
-from collections.abc import Callable, Iterable, Iterator
-from concurrent.futures import ThreadPoolExecutor
+from collections.abc import Iterable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
-from typing import NamedTuple, TypeVar
+from typing import NamedTuple
 
 import numpy as np
 import soundfile
-from jackserver import SINK, JackServer, capture_ports, ports
-from support.running import COMMAND, SOON_S, STARTS_S, Running, Samples, told, wait_for
+from support.ears import AUDIBLE, MS, Caught, Heard
+from support.running import COMMAND, SOON_S, STARTS_S, Running, told, wait_for
 from support.smallshow import CELL, GUARD, HOUSE, RATE_HZ
 
 from beamctl.engine import layout as at
@@ -32,13 +31,7 @@ from beamctl.host.places import memory_folder, show_key
 from beamctl.show.records import Record
 from beamctl.show.show import Show
 
-FEEDS = 8
-MS = RATE_HZ // 1000  # frames
 RAMP = 20 * MS
-AUDIBLE = 0.001  # re full scale
-CAPTURE_S = 2.0
-LEAD_S = 0.15  # of the cue before a blow, by which a capture finds its place
-STEP = 2.0**-31  # of what the recorder of ports keeps
 TITLE = "a loop that travels"
 
 SHEET = f"""format = 1
@@ -94,38 +87,6 @@ class Blow(NamedTuple):
         return 1000.0 * (time.monotonic() - self.at_s)
 
 
-class Heard(NamedTuple):
-    """Frames that left, (n, feeds), and the number of the first."""
-
-    first: int
-    samples: Samples
-
-    def between(self, begin: int, end: int) -> Samples:
-        """Frames `begin` up to `end` by their numbers, as far as they were heard."""
-        return self.samples[max(0, begin - self.first) : max(0, end - self.first)]
-
-    def silent_from(self) -> int:
-        """Number of the frame after the last that was not exactly zero."""
-        sounding = np.flatnonzero(self.samples.any(axis=1))
-        return self.first + (int(sounding[-1]) + 1 if len(sounding) else 0)
-
-    def sounds_before(self, frame: int) -> None:
-        """Assert that each of the ten milliseconds before `frame` sounds."""
-        last = self.between(frame - 10 * MS, frame)
-        assert len(last) == 10 * MS
-        assert np.abs(last).reshape(10, -1).max(axis=1).min() > AUDIBLE
-
-    def ms_to_zero(self, blow: Blow, until: int | None = None) -> float:
-        """From a blow to the last frame that was not exactly zero, before frame `until`."""
-        end = self.first + len(self.samples) if until is None else until
-        after = Heard(blow.frame, self.between(blow.frame, end))
-        return (after.silent_from() - blow.frame) / MS
-
-
-Deed = TypeVar("Deed")
-Caught = Callable[[Heard], Heard]  # what left, placed by what is expected
-
-
 # -- processes --------------------------------------------------------------------------------
 
 
@@ -170,8 +131,16 @@ class Watched:
         self.pid = pid
         self._handle = os.pidfd_open(pid)
 
+    def renders_no_more(self) -> bool:
+        """True once its main thread is dead; others may still be dying."""
+        try:
+            state = Path(f"/proc/{self.pid}/stat").read_bytes().rpartition(b")")[2].split()[0]
+        except OSError:
+            return True
+        return state in (b"Z", b"X")
+
     def ended(self, timeout_s: float = SOON_S) -> bool:
-        """True once the process is dead."""
+        """True once all of the process is dead."""
         poll = select.poll()
         poll.register(self._handle, select.POLLIN)
         return bool(poll.poll(1000.0 * timeout_s))
@@ -234,12 +203,10 @@ class Desk:
 
 @contextmanager
 def desk(show: Path, frozen: bool = False) -> Iterator[Desk]:
-    """A desk that shows the sheet, or whose terminal nobody ever reads."""
+    """A desk that shows the sheet, or one whose terminal nobody ever reads."""
     found = Desk(show, frozen)
     try:
-        if frozen:
-            wait_for(found.is_blocked, "the desk to be blocked in writing", STARTS_S)
-        else:
+        if not frozen:
             wait_for(lambda: TITLE.encode() in found.shown, "the desk to show the sheet", STARTS_S)
         yield found
     finally:
@@ -310,17 +277,19 @@ class Judge:
         """Why the gate moved, and when."""
         return [(str(r.args["why"]), r.sample) for r in self._gates]
 
-    def same_and_no_louder(self, caught: Caught, tolerance: float) -> Heard:
+    def same_and_no_louder(self, caught: Caught, tolerance: float, cut: bool = False) -> Heard:
         """What left is the replay, and nowhere above what the cue asked.
 
-        Before the engine began, and from a cut on, nothing sounds at all.
+        Before the engine began, after it ended, and from a `cut` on, nothing sounds at all.
         """
         heard = caught(self.expected)
-        first, end = max(heard.first, self.start), heard.silent_from()
-        assert end <= self.until
-        assert not heard.between(heard.first, first).any()
-        sent = heard.between(first, end)
-        expected, asked = (h.between(first, end) for h in (self.expected, self.asked))
+        begin = max(heard.first, self.start)
+        end = heard.silent_from() if cut else min(heard.end, self.until)
+        assert begin < end <= self.until
+        assert not heard.between(heard.first, begin).any()
+        assert not heard.between(end, heard.end).any()
+        sent = heard.between(begin, end)
+        expected, asked = (h.between(begin, end) for h in (self.expected, self.asked))
         np.testing.assert_allclose(sent, expected, rtol=0.0, atol=tolerance)
         assert (np.abs(sent) <= np.abs(asked) + tolerance).all()
         return heard
@@ -332,93 +301,3 @@ class Judge:
         fall = np.cos(0.5 * np.pi * np.arange(RAMP) / RAMP)[:, np.newaxis] ** 2
         np.testing.assert_allclose(sent, fall * full, rtol=0.0, atol=1e-5)
         assert not heard.between(begin + RAMP, begin + 2 * RAMP).any()
-
-
-# -- two ways to hear what left ---------------------------------------------------------------
-
-
-class RecordingEar:
-    """The recording sink: all that left, sample by sample, also of an engine that was killed."""
-
-    name = "recording"
-    tolerance = 0.0
-    env: dict[str, str] | None = None
-
-    def __init__(self, folder: Path) -> None:
-        self._folder = folder
-        self._hosts = 0
-
-    def new_sink(self) -> str:
-        """Sink of the next host."""
-        self._hosts += 1
-        (self._folder / f"{self._hosts}").mkdir()
-        return f"file:{self._take(0)}"
-
-    def listen(self, deed: Callable[[], Deed], engine: int = 0) -> tuple[Deed, Caught]:
-        """Do it; all that the host's engine of this number sends is kept anyway."""
-        path = self._take(engine)
-        return deed(), lambda expected: Heard(expected.first, recorded(path))
-
-    def _take(self, engine: int) -> Path:
-        name = "take.wav" if engine == 0 else f"take.{engine + 1}.wav"
-        return self._folder / f"{self._hosts}" / name
-
-
-class PortEar:
-    """JACK: what its ports carried for two seconds around each deed, heard by another client."""
-
-    name = "JACK"
-    tolerance = STEP
-
-    def __init__(self, server: JackServer) -> None:
-        self._server = server
-        self.env: dict[str, str] | None = server.env
-
-    def new_sink(self) -> str:
-        """Sink of the next host."""
-        return SINK
-
-    def listen(self, deed: Callable[[], Deed], engine: int = 0) -> tuple[Deed, Caught]:
-        """Do it between beginning and end of a capture."""
-        del engine  # only the last one has ports
-        before = set(ports(self._server))
-        outputs = [port for port in ports(self._server) if port.startswith("PortAudio")]
-        assert len(outputs) == FEEDS, outputs
-        with ThreadPoolExecutor(1) as pool:
-            capture = pool.submit(capture_ports, self._server, outputs, CAPTURE_S)
-            wait_for(lambda: len(set(ports(self._server)) - before) >= FEEDS, "the recorder")
-            time.sleep(LEAD_S)
-            done = deed()
-        caught = capture.result()
-        return done, lambda expected: placed(caught, expected)
-
-
-def placed(caught: Samples, expected: Heard) -> Heard:
-    """Number the frames of a capture by finding one of the first that sound among the expected."""
-    sounding = np.flatnonzero(np.abs(caught).max(axis=1) > AUDIBLE)
-    assert len(sounding), "silence was captured"
-    k = int(sounding[len(sounding) // 20])
-    found = np.flatnonzero(np.abs(expected.samples - caught[k]).max(axis=1) <= STEP)
-    assert len(found) == 1, f"a frame that was captured is expected {len(found)} times"
-    return Heard(expected.first + int(found[0]) - k, caught)
-
-
-def recorded(path: Path) -> Samples:
-    """Samples of a recording; of one whose writer was killed, as many as are there."""
-    if not path.exists():
-        return _unfinished(Path(f"{path}.part"))
-    samples, rate_hz = soundfile.read(path, dtype="float32", always_2d=True)
-    assert rate_hz == RATE_HZ
-    return np.asarray(samples)
-
-
-def _unfinished(part: Path) -> Samples:
-    """Whole frames after a header that does not know their number yet."""
-    raw = part.read_bytes()
-    place = 12
-    while (name := raw[place : place + 4]) != b"data":
-        assert name, "no samples"
-        place += 8 + int.from_bytes(raw[place + 4 : place + 8], "little")
-    body = raw[place + 8 :]
-    count = len(body) // (4 * FEEDS) * FEEDS
-    return np.frombuffer(body, "<f4", count).reshape(-1, FEEDS)
