@@ -184,8 +184,8 @@ class Host:
         self._keeper.look_for_sink()
 
     def _engine_gone(self) -> None:
-        if self._player.output == "LOST" and self._busy == "looking for the sink":
-            return
+        if self._keeper.looking:
+            return  # it said why before it went
         if not self._opened_once:
             self._failure = DeviceError("the engine ended while it started", "its log tells why")
             self.stop()

@@ -145,6 +145,11 @@ class Keeper:
         self.status.meters[:] = 0.0
         self._look_at = time.monotonic() + LOOK_S
 
+    @property
+    def looking(self) -> bool:
+        """True while a lost sink is looked for."""
+        return self._look_at is not None or self._looking is not None
+
     def look(self) -> list[str] | None:
         """Once a look is over: the sinks there are. The lost one among them starts an engine."""
         now = time.monotonic()
