@@ -5,7 +5,7 @@ Texts that change only with an edit (titles, notes) travel once, as `SheetView`.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 
 @dataclass(frozen=True, slots=True)
@@ -78,6 +78,38 @@ class EngineView:
 
 
 @dataclass(frozen=True, slots=True)
+class GuardView:
+    """What the exposure guard measures and holds. Levels in dB re 20 µPa, in the worst band."""
+
+    state: str  # CLEAR, NEAR, CAPPING, TRIPPED or BLIND
+    reason: str = ""  # why it is TRIPPED or BLIND
+    headroom_db: float | None = None  # least of cap minus level, anywhere; None: nothing is heard
+    seat: str = ""  # where that is: "stalls B4"
+    band_hz: float = 0.0  # nominal frequency of its band
+    level_db: float | None = None
+    cap_db: float = 0.0
+    held_db: dict[str, float] = field(default_factory=dict)  # panel → dB it is held down by, > 0
+    dose_pct: float = 0.0  # the most of any seat; 100 is its cap for the whole dose window
+    dose_seat: str = ""
+    signed: str = ""  # "signed by NAME on DATE", or "UNSIGNED: why"
+    margin_db: float = 0.0  # the most that any panel counts louder for want of a measurement
+
+
+@dataclass(frozen=True, slots=True)
+class SeatLevel:
+    """One seat or crew point, averaged as the caps are, in the band where it is nearest its cap."""
+
+    name: str
+    block: str
+    crew: bool
+    at_m: tuple[float, float, float]
+    level_db: float | None
+    band_hz: float
+    cap_db: float
+    dose_pct: float
+
+
+@dataclass(frozen=True, slots=True)
 class Snapshot:
     """Everything at one moment."""
 
@@ -95,6 +127,9 @@ class Snapshot:
     panels: tuple[PanelView, ...]
     engine: EngineView
     notices: tuple[str, ...]  # unacknowledged, oldest first
+    guard: GuardView = GuardView("BLIND", "not started")
+    barred: dict[str, str] = field(default_factory=dict)  # cue → why, and the trim that fits
+    unvouched: bool = False  # no seat is declared, and nobody has answered for that
 
 
 @dataclass(frozen=True, slots=True)

@@ -34,7 +34,7 @@ MAY = {
     "desk": {"acoustics", "actions", "caution", "errors", "show", "snapshot"},
     "__main__": {"cli"},
 }
-COMPOSE = {"host", "cli"}
+COMPOSE = {"host", "cli", "commands"}
 PURE = {"acoustics", "show"}
 IMPURE = {
     *("asyncio", "concurrent", "ctypes", "datetime", "importlib", "io", "logging"),

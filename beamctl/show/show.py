@@ -10,6 +10,7 @@ from beamctl.show.house import House
 from beamctl.show.limits import Guard, Wire
 from beamctl.show.rig import Rig
 from beamctl.show.sheet import Sheet
+from beamctl.show.standing import Caps, standing
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,10 +41,16 @@ class Show:
     cells: Mapping[str, CellMap]  # by panel
     sounds: Mapping[str, SoundFacts]  # by the name the sheet uses
     digests: Mapping[str, str]  # SHA-256 of each file that was read, by its name in the folder
+    seal: str = ""  # digest of guard, rig and house, as a signature names it
 
     def panel_of(self, beam: str) -> str:
         """The panel that throws `beam`."""
         return self.sheet.beam[beam].panel
+
+    @property
+    def caps(self) -> Caps:
+        """What the guard holds this show to."""
+        return standing(self.guard, self.rig, self.seal)
 
     @property
     def channels(self) -> int:

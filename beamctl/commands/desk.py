@@ -1,0 +1,44 @@
+"""`beamctl desk`: the terminal interface, and a host for it."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+import click
+
+from beamctl.commands.options import JOURNAL, SHOW, SINK
+from beamctl.files.reader import load_show
+
+
+@click.command()
+@SHOW
+@SINK
+@JOURNAL
+@click.option("--plain", is_flag=True, help="Plain ASCII, no block glyphs.")
+def desk(show: Path, sink: str, journal: Path | None, plain: bool) -> None:
+    """Open the desk on SHOW; starts a host, or joins the one that runs this show.
+
+    Leaving the desk never changes a sample. A host that this desk started ends with it, unless the
+    output is OPEN or HUSHED: then it runs on, and `beamctl desk` joins it again.
+    """
+    from beamctl.commands.joining import HOST_STARTS_S, answers, said_by_host, start_host
+    from beamctl.desk.app import run_desk
+    from beamctl.host.link import Link
+
+    load_show(show)
+    link = Link(show)
+    host = None if answers(link) else start_host(show, sink, journal, link)
+    code = run_desk(link, plain)
+    if host is not None and answers(link):
+        output = link.snapshot().output
+        if output in ("OPEN", "HUSHED"):
+            click.echo(f"The output is {output} and the host runs on.")
+            click.echo(f"  beamctl desk {show}   joins it;   beamctl host {show} --stop   ends it")
+        else:
+            link.stop_host()
+            host.wait(HOST_STARTS_S)
+    link.close()
+    if host is not None and host.poll() not in (None, 0):
+        raise said_by_host(host.returncode)
+    sys.exit(code)
