@@ -7,6 +7,7 @@ when the ring ran dry) comes here as records, each taken in exactly at its frame
 from __future__ import annotations
 
 import heapq
+import math
 from collections.abc import Callable, Mapping
 
 import numpy as np
@@ -29,6 +30,11 @@ def wires_of(show: Show) -> list[Wire]:
         Wire(panel.first_feed - 1, show.cells[name].feeds, panel.full_drive)
         for name, panel in show.rig.panel.items()
     ]
+
+
+def full_drives(show: Show) -> list[float]:
+    """Ceilings that hold nothing: every feed of a panel at full scale."""
+    return [math.sqrt(wire.feeds) for wire in wires_of(show)]
 
 
 def ramp_n(show: Show) -> int:
@@ -60,8 +66,8 @@ class Chain:
         self.outlet = Outlet.create(
             None, frames, show.channels, wires_of(show), ramp_n(show), start
         )
-        ratings = [wire.rating for wire in wires_of(show)]
-        self.outlet.grant(FOREVER, ratings)
+        self.outlet.grant(FOREVER, full_drives(show))
+        self.outlet.host_lives(FOREVER)
         self.outlet.flow()
         self._block = np.zeros((STEP, show.channels), np.float32)
         self._waiting: list[tuple[int, int, Record]] = []

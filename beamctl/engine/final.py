@@ -2,12 +2,13 @@
 
 No Python, no allocation, no lock, and no arithmetic shortcuts that assume a number is a number.
 For every block it decides once, at the block's first frame, whether the gate may be open; then,
-frame by frame: what cannot be a sample becomes 0 and a latched fault; a panel whose samples would
-pass its ceiling is held by one smooth gain that sees the peaks coming in the ring; what passes it
-all the same is cut off, and that is a fault too.
+frame by frame: what cannot be a sample becomes 0 and a latched fault; a panel whose peaks would
+pass its rating, or whose drive its ceiling, is held by one smooth gain that sees both coming in the
+ring; a peak that passes all the same is cut off, and that is a fault too.
 
 A closed gate stays closed until it is asked anew: neither a lease that comes back nor a device that
 flows again opens it. Only a ring that ran dry for a moment comes back by itself, by the ramp.
+How drive is measured against a ceiling, and how a ceiling moves, is in `drive.py`.
 """
 
 from __future__ import annotations
@@ -19,6 +20,7 @@ from numba.extending import intrinsic
 
 from beamctl.engine import layout as at
 from beamctl.engine.compiled import compiled
+from beamctl.engine.drive import at_mark, glide, held_at_marks, measure, note_left
 from beamctl.show.glides import is_settled, scalar_at, take_over
 
 MAGNITUDE = np.int32(0x7FFFFFFF)  # a float32's bits without its sign
@@ -88,6 +90,7 @@ def pull(memory, out, count):
     read = memory[at.READ]
     held = memory[at.WRITTEN] - read
     fence()
+    _take_grant(memory, read)
     _decide(memory, read)
     _scan(memory, read + held)
     taken = min(held, count)
@@ -115,13 +118,33 @@ def _decide(memory, sample):
     hush, ask = memory[at.HUSH], memory[at.OPEN_ASK]  # once: they may change at any time
     hushed, asked = hush != memory[at.SEEN_HUSH], ask != memory[at.SEEN_OPEN]
     memory[at.SEEN_HUSH], memory[at.SEEN_OPEN] = hush, ask
-    leased = sample < memory[at.LEASE_UNTIL]
-    if gate == 1 and (hushed or not leased):
+    leased, hosted = sample < memory[at.LEASE_UNTIL], sample < memory[at.HOST_UNTIL]
+    if gate == 1 and (hushed or not leased or not hosted):
         _ramp(memory, sample, memory[at.RAMP_N], 0.0)
-        _log(memory, sample, at.HUSHED if hushed else at.LEASE_OVER, memory[at.RAMP_N])
-    elif gate == 0 and asked and leased and not hushed:
+        over = at.HOST_OVER if leased else at.LEASE_OVER
+        _log(memory, sample, at.HUSHED if hushed else over, memory[at.RAMP_N])
+    elif gate == 0 and asked and leased and hosted and not hushed:
         _ramp(memory, sample, memory[at.OPEN_N], 1.0)
         _log(memory, sample, at.OPENED, memory[at.OPEN_N])
+
+
+@compiled
+def _take_grant(memory, sample):
+    """From `sample` on the newest grant's ceilings hold: at once while the gate is shut."""
+    grants = memory[at.GRANTS]
+    if grants == memory[at.SEEN_GRANT]:
+        return
+    fence()
+    row = at.CEILINGS + (grants % at.GRANTS_KEPT) * at.MAX_PANELS
+    gate = memory[at.GATE_ROW : at.GATE_ROW + 6].view(np.float64)
+    shut = memory[at.GATE] == 0 and scalar_at(gate, float(sample)) <= 0.0
+    for panel in range(memory[at.PANELS]):
+        memory[at.TARGETS + panel] = memory[row + panel]
+        if shut:
+            memory[at.GLIDES + 2 * panel] = memory[row + panel]
+            memory[at.GLIDES + 2 * panel + 1] = memory[row + panel]
+    memory[at.SEEN_GRANT] = grants
+    _log(memory, sample, at.GRANTED, grants)
 
 
 @compiled
@@ -174,6 +197,7 @@ def _scan(memory, until):
                 start = ((chunk * at.CHUNK + i) % frames) * channels + first
                 largest = max(largest, _peak(bits, start, feeds))
             _demand(memory, panel, chunk, bits_float(largest))
+            measure(memory, panel, chunk, BROKEN)
         chunk += 1
     memory[at.SCANNED] = chunk
 
@@ -233,29 +257,32 @@ def _finish(memory, out, read, taken):
         limit = _limit(memory, panel)
         i = 0
         while i < taken:
-            # one chunk at a time: its demand is known at both its ends
+            # one chunk at a time: what it demands is known at both its ends
             sample = read + i
             n = min(taken - i, at.CHUNK - sample % at.CHUNK)
-            chunk = sample // at.CHUNK
-            before = _demand_of(memory, panel, chunk + at.SMOOTH - 1)
-            after = _demand_of(memory, panel, chunk + at.SMOOTH)
-            sounded |= _finish_chunk(memory, out, panel, read, i, n, before, after, limit)
+            glide(memory, panel, sample // at.CHUNK)
+            sounded |= _finish_chunk(memory, out, panel, read, i, n, limit)
             i += n
     return sounded
 
 
 @compiled
-def _finish_chunk(memory, out, panel, read, begin, n, before, after, limit):
+def _finish_chunk(memory, out, panel, read, begin, n, limit):
     """Frames begin … begin + n of a panel, inside one chunk; 1 when the gate let any out."""
     frames, channels = memory[at.FRAMES], memory[at.CHANNELS]
     first, feeds = memory[at.FIRSTS + panel], memory[at.FEEDS + panel]
+    chunk = (read + begin) // at.CHUNK
     ring = memory[at.SAMPLES :].view(np.float32)
     row = memory[at.GATE_ROW : at.GATE_ROW + 6].view(np.float64)
     still = is_settled(row, float(read + begin))
     gate = np.float32(max(0.0, scalar_at(row, float(read + begin))))
-    held = max(before, after) > limit
+    peak_before = at_mark(memory, at.DEMANDS, panel, chunk + at.SMOOTH - 1)
+    peak_after = at_mark(memory, at.DEMANDS, panel, chunk + at.SMOOTH)
+    high = max(peak_before, peak_after) > limit
+    before, after = held_at_marks(memory, panel, chunk)
+    held = min(before, after) < 1.0
     limit_bits = float_bits(limit)
-    sounded = 0
+    sounded, squares = 0, 0.0
     for i in range(begin, begin + n):
         sample = read + i
         if not still:
@@ -263,40 +290,33 @@ def _finish_chunk(memory, out, panel, read, begin, n, before, after, limit):
         if gate == np.float32(0.0):
             continue
         gain = gate
-        if held:
-            share = (sample % at.CHUNK) / at.CHUNK
-            demand = before + (after - before) * share
+        share = (sample % at.CHUNK) / at.CHUNK
+        if high:
+            demand = peak_before + (peak_after - peak_before) * share
             if demand > limit:
                 gain = np.float32(gate * JUST_UNDER * limit / demand)
+        if held:
+            gain = min(gain, np.float32(gate * (before + (after - before) * share)))
         source = (sample % frames) * channels + first
         target = i * channels + first
         wrong = _send(ring, source, out, target, feeds, gain, limit, limit_bits)
         if wrong != 0:
             _tell_wrong(memory, sample, first, wrong)
+        squares += gain * gain
         sounded = 1
+    note_left(memory, panel, read + begin, squares)
     return sounded
 
 
 @compiled
 def _limit(memory, panel):
-    """What no sample of a panel may pass: the least of its ceiling, its rating and full scale."""
-    ceiling = memory[at.CEILINGS + panel : at.CEILINGS + panel + 1].view(np.float64)[0]
+    """What no sample of a panel may pass: the lesser of its rating and full scale."""
     rating = memory[at.RATINGS + panel : at.RATINGS + panel + 1].view(np.float64)[0]
-    if not (ceiling >= 0.0 and rating >= 0.0):  # what is not a number lets nothing out
+    if not rating >= 0.0:  # what is not a number lets nothing out
         return np.float32(0.0)
-    exact = min(ceiling, rating, 1.0)
+    exact = min(rating, 1.0)
     limit = np.float32(exact)
     return bits_float(float_bits(limit) - np.int32(1)) if limit > exact else limit
-
-
-@compiled
-def _demand_of(memory, panel, chunk):
-    """Demand of a panel at a chunk's mark; the newest there is, near the ring's end."""
-    newest = memory[at.SCANNED] - 1
-    if newest < 0:
-        return 0.0
-    place = at.DEMANDS + panel * at.DEMANDS_KEPT + min(chunk, newest) % at.DEMANDS_KEPT
-    return memory[place : place + 1].view(np.float64)[0]
 
 
 @compiled

@@ -62,8 +62,10 @@ class Outlet:
         Its first frame is number `start`, a multiple of layout.CHUNK. ValueError when a panel's
         feeds are not all among the channels, or there are too many panels.
         """
-        if len(panels) > at.MAX_PANELS or any(
-            not 0 <= wire.first <= wire.first + wire.feeds <= channels for wire in panels
+        if (
+            channels > at.MAX_CHANNELS
+            or len(panels) > at.MAX_PANELS
+            or any(not 0 <= wire.first <= wire.first + wire.feeds <= channels for wire in panels)
         ):
             raise ValueError(f"{len(panels)} panels do not fit {channels} channels")
         frames = max(frames, at.LOOKAHEAD + 2 * at.CHUNK)
@@ -81,6 +83,7 @@ class Outlet:
         memory[at.PANELS], memory[at.RAMP_N], memory[at.SIZE] = len(panels), ramp_n, size
         memory[at.WRITTEN], memory[at.READ], memory[at.SCANNED] = start, start, start // at.CHUNK
         memory[at.START] = start
+        memory[at.GLIDED : at.GLIDED + len(panels)] = start // at.CHUNK
         for i, wire in enumerate(panels):
             memory[at.FIRSTS + i], memory[at.FEEDS + i] = wire.first, wire.feeds
             outlet._floats[at.RATINGS + i] = wire.rating
@@ -152,10 +155,40 @@ class Outlet:
     # -- whoever grants and asks ------------------------------------------------------------------
 
     def grant(self, until: int, ceilings: Sequence[float] | None = None) -> None:
-        """Let panels sound up to frame `until`, under their ceilings (re full scale)."""
+        """Let panels sound up to frame `until`, under their ceilings of drive.
+
+        Drive is the root of the summed mean squares of a panel's feeds, re full scale.
+        """
         if ceilings is not None:
-            self._floats[at.CEILINGS : at.CEILINGS + len(ceilings)] = ceilings
+            number = self.count(at.GRANTS) + 1
+            row = at.CEILINGS + (number % at.GRANTS_KEPT) * at.MAX_PANELS
+            self._floats[row : row + len(ceilings)] = ceilings
+            self.memory[at.GRANTS] = number
         self.memory[at.LEASE_UNTIL] = until
+
+    def granted(self, number: int) -> list[float]:
+        """Ceilings of one of the last 256 grants."""
+        row = at.CEILINGS + (number % at.GRANTS_KEPT) * at.MAX_PANELS
+        return [float(v) for v in self._floats[row : row + self.count(at.PANELS)]]
+
+    def host_lives(self, until: int) -> None:
+        """The host answers for what sounds up to frame `until`."""
+        self.memory[at.HOST_UNTIL] = until
+
+    def gains_left(self, first: int, count: int) -> NDArray[np.float64]:
+        """Rms gain (panels,) that frames first … first + count left with; both whole chunks."""
+        chunks = np.arange(first // at.CHUNK, (first + count) // at.CHUNK) % at.DEMANDS_KEPT
+        end = at.LEFT + self.count(at.PANELS) * at.DEMANDS_KEPT
+        squares = self._floats[at.LEFT : end].reshape(-1, at.DEMANDS_KEPT)[:, chunks]
+        found: NDArray[np.float64] = np.sqrt(squares.sum(axis=1) / count)
+        return found
+
+    def frames_at(self, first: int, count: int) -> Block:
+        """A copy (count, channels) of frames that are in the ring."""
+        channels, frames = self.channels, self.frames
+        ring = self.memory[at.SAMPLES :].view(np.float32)[: frames * channels]
+        index = np.arange(first, first + count) % frames
+        return ring.reshape(frames, channels)[index]
 
     def ask_open(self, n: int) -> None:
         """Ask for the gate to open over n frames."""

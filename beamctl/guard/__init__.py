@@ -1,0 +1,1 @@
+"""The exposure guard: pure estimator, ceilings and dose."""

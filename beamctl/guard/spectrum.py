@@ -1,0 +1,155 @@
+"""From the samples of a panel's feeds to what the field model takes.
+
+Frames of half-overlapping sine windows, whose squares sum to one, so that no power is lost between
+them; a full-scale sine is a unit phasor. The band that holds the carrier is cut into sub-bands,
+each narrow enough that one frequency stands for it across the panel; of each the strongest
+independent vectors are kept, and of all the rest the power.
+"""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from beamctl.acoustics.exposure import Band, band_at
+from beamctl.show.standing import GUARDED
+
+Array = NDArray[np.float64]
+
+FRAME_S = 0.0054  # about; a power of two
+AUDIBLE_HZ = 17_800.0  # below this nothing belongs into a feed
+TURN = 0.6  # the most that a sub-band's width times the sound's way across a panel may be, cycles
+WIDEST_HZ, NARROWEST_HZ = 1500.0, 400.0
+VECTORS = 4  # at most, kept of a sub-band
+NEGLIGIBLE = 3e-5  # of the band's power: vectors below it go to the rest
+
+
+class SubBand(NamedTuple):
+    """One slice of the carrier's band: bins low … high - 1."""
+
+    mid_hz: float
+    low: int
+    high: int
+
+
+Vectors = NDArray[np.complex64]
+
+
+class Spectrum(NamedTuple):
+    """One panel over one step; powers are squares of phasors, 1 for a full-scale sine.
+
+    parts    of the carrier's band: frequency in hertz and vectors (F, K) of each sub-band
+    rest     power of the carrier's band that no vector holds
+    bands    band → (F,) power of each feed, for all other bands that hold any
+    drive    root of the summed mean squares of the feeds
+    carrier  power of the carrier's band, audible: power below 17.8 kHz, both over all feeds
+    """
+
+    parts: list[tuple[float, Vectors]]
+    rest: float
+    bands: dict[Band, Array]
+    drive: float
+    carrier: float
+    audible: float
+
+
+def frame_length(rate_hz: int) -> int:
+    """Samples of a frame: the power of two nearest `FRAME_S`."""
+    return int(2 ** round(np.log2(FRAME_S * rate_hz)))
+
+
+class Analyser:
+    """Spectra of one panel: `take` wants steps of a fixed multiple of half a frame, in order."""
+
+    def __init__(self, rate_hz: int, feeds: int, carrier_hz: float, crossing_s: float) -> None:
+        """`crossing_s`: how long sound takes across the panel."""
+        self._n = frame_length(rate_hz)
+        self._window = np.sin(np.pi * (np.arange(self._n) + 0.5) / self._n).astype(np.float32)
+        self._scale = np.float32(2.0 * np.sqrt(2.0) / self._n)
+        self._tail = np.zeros((feeds, self._n // 2), np.float32)
+        hz = np.arange(self._n // 2 + 1, dtype=np.float64) * float(rate_hz / self._n)
+        home = band_at(carrier_hz)
+        self._audible = int(np.searchsorted(hz, AUDIBLE_HZ))
+        self._bands = {
+            band: (int(np.searchsorted(hz, band.low_hz)), int(np.searchsorted(hz, band.high_hz)))
+            for band in GUARDED
+        }
+        self._home = self._bands.pop(home) if home in self._bands else (0, 0)
+        width_hz = float(np.clip(TURN / max(crossing_s, 1e-9), NARROWEST_HZ, WIDEST_HZ))
+        self._subs = sub_bands(hz, self._home, carrier_hz, width_hz)
+
+    @property
+    def frequencies_hz(self) -> tuple[float, ...]:
+        """The frequencies that stand for the sub-bands."""
+        return tuple(sub.mid_hz for sub in self._subs)
+
+    def take(self, block: NDArray[np.float32]) -> Spectrum:
+        """Spectrum of the next step (n, F), n a multiple of half a frame."""
+        half = self._n // 2
+        signal = np.concatenate((self._tail, block.T), axis=1)
+        self._tail = signal[:, -half:].copy()
+        count = signal.shape[1] // half - 1
+        frames = np.stack([signal[:, k * half : k * half + self._n] for k in range(count)], axis=1)
+        scale = np.float32(self._scale / np.sqrt(count))
+        bins: Vectors = np.fft.rfft(frames * self._window, axis=2).astype(np.complex64) * scale
+        power = bins.real**2 + bins.imag**2
+        by_bin = power.sum(axis=(0, 1), dtype=np.float64)
+        parts, rest = self._parts(bins, by_bin)
+        return Spectrum(
+            parts=parts,
+            rest=rest,
+            bands={
+                band: power[:, :, low:high].sum(axis=(1, 2), dtype=np.float64)
+                for band, (low, high) in self._bands.items()
+                if by_bin[low:high].sum() > 0.0
+            },
+            drive=float(np.sqrt(np.sum(np.square(block, dtype=np.float64)) / len(block))),
+            carrier=float(by_bin[slice(*self._home)].sum()),
+            audible=float(by_bin[: self._audible].sum()),
+        )
+
+    def _parts(self, bins: Vectors, by_bin: Array) -> tuple[list[tuple[float, Vectors]], float]:
+        """Vectors of every sub-band that counts, and the power of the rest."""
+        least = NEGLIGIBLE * float(by_bin[slice(*self._home)].sum())
+        parts, rest = [], 0.0
+        for sub in self._subs:
+            held = float(by_bin[sub.low : sub.high].sum())
+            if held <= least:
+                rest += held
+                continue
+            snapshots = bins[:, :, sub.low : sub.high].reshape(len(bins), -1)
+            vectors, left = principal(snapshots, least)
+            parts.append((sub.mid_hz, vectors))
+            rest += left
+        return parts, rest
+
+
+def sub_bands(
+    hz: Array, home: tuple[int, int], carrier_hz: float, width_hz: float
+) -> list[SubBand]:
+    """Slices of about `width_hz` over the bins of `home`, one of them about the carrier."""
+    low, high = home
+    place = np.floor((hz[low:high] - carrier_hz) / width_hz + 0.5)
+    found = []
+    for number in np.unique(place):
+        bins = low + np.flatnonzero(place == number)
+        middle = carrier_hz if number == 0 else float(np.mean(hz[bins]))
+        found.append(SubBand(middle, int(bins[0]), int(bins[-1]) + 1))
+    return found
+
+
+def principal(snapshots: Vectors, least: float) -> tuple[Vectors, float]:
+    """The strongest orthogonal vectors (F, K ≤ 4) of snapshots (F, M), and the power of the rest.
+
+    The left singular vectors, each times its singular value, whose power is over `least`: their
+    powers and the rest add to the snapshots'.
+    """
+    feeds, count = snapshots.shape
+    few = count <= feeds
+    gram = snapshots.conj().T @ snapshots if few else snapshots @ snapshots.conj().T
+    powers, turns = np.linalg.eigh(gram)
+    kept = [k for k in range(len(powers) - 1, -1, -1)[:VECTORS] if powers[k] > least]
+    vectors = snapshots @ turns[:, kept] if few else turns[:, kept] * np.sqrt(powers[kept])
+    return vectors, max(0.0, float(np.trace(gram).real) - float(powers[kept].sum()))
