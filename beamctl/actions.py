@@ -125,5 +125,19 @@ ACTIONS: dict[str, Action] = {
             (),
             "Takes the oldest notice off the screen; * does it too.",
         ),
+        Action(
+            "clear",
+            events.Clear,
+            "Clear a trip",
+            (),
+            "After a trip: the typed word CLEAR leads to HUSHED. Never by the network.",
+        ),
+        Action(
+            "vouch",
+            events.Vouch,
+            "Answer for a house without seats",
+            (),
+            "A name, journalled: where no seat is declared nothing can be measured.",
+        ),
     )
 }

@@ -6,7 +6,7 @@ IRPA interim guidelines 1984): the published caps are interim, and the evidence 
 
 from __future__ import annotations
 
-CAUTION_LINE = "Ultrasound: keep to the venue's cap and local rules; ask qualified people."
+CAUTION_LINE = "Ultrasound: local rules and qualified people come first."
 
 CAUTION_TEXT = """\
 Ask first: local rules and qualified people decide what may sound in a room.

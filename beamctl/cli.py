@@ -12,7 +12,10 @@ from beamctl.commands.host import host
 from beamctl.commands.inspect import inspect
 from beamctl.commands.render import render
 from beamctl.commands.replay import replay
+from beamctl.commands.report import report
+from beamctl.commands.sign import sign
 from beamctl.commands.sinks import sinks
+from beamctl.commands.wirecheck import wirecheck
 from beamctl.errors import BeamctlError
 
 
@@ -46,5 +49,5 @@ def main() -> None:
     """
 
 
-for command in (desk, host, inspect, render, replay, sinks):
+for command in (desk, host, inspect, render, replay, report, sign, sinks, wirecheck):
     main.add_command(command)

@@ -17,7 +17,7 @@ from queue import PriorityQueue
 from threading import Event, Thread
 
 from beamctl.desk.link import HostLink
-from beamctl.snapshot import Answer, SheetView, Snapshot
+from beamctl.snapshot import Answer, SeatLevel, SheetView, Snapshot
 
 HUSH = "hush"
 RETRY_S = 1.0
@@ -38,17 +38,26 @@ class Picture:
     gone: bool = False
 
 
+@dataclass(frozen=True, slots=True)
+class Levels:
+    """The seats as they last came; `at_s` is when, on the courier's clock."""
+
+    seats: tuple[SeatLevel, ...]
+    at_s: float
+
+
 class Courier:
     """Carries actions to the host and pictures back."""
 
     def __init__(self, link: HostLink, clock: Callable[[], float] = time.monotonic) -> None:
         self.clock = clock
         self.picture = Picture(at_s=clock())
+        self.levels: Levels | None = None
         self._answers: deque[tuple[str, Answer]] = deque(maxlen=64)
         self._link = link
         self._jobs: PriorityQueue[tuple[int, int, Callable[[], None] | None]] = PriorityQueue()
         self._order = itertools.count()
-        self._picture_waits = Event()
+        self._picture_waits, self._levels_wait = Event(), Event()
         self._retry_at_s = 0.0
         self._thread = Thread(target=self._work, name="desk-courier", daemon=True)
 
@@ -61,7 +70,7 @@ class Courier:
         self._put(_RANK_ACT, None)
         self._thread.join(STOP_WAIT_S)
 
-    def post(self, name: str, **arguments: object) -> None:
+    def post(self, name: str, /, **arguments: object) -> None:
         """Have the host asked for action `name`; returns at once."""
         posted_s = self.clock()
         rank = _RANK_HUSH if name == HUSH else _RANK_ACT
@@ -69,14 +78,20 @@ class Courier:
 
     def ask_picture(self) -> None:
         """Have a fresh picture fetched, unless one is being fetched or the host just failed."""
-        if self._picture_waits.is_set() or self.clock() < self._retry_at_s:
-            return
-        self._picture_waits.set()
-        self._put(_RANK_PICTURE, self._fetch)
+        self._ask_once(self._picture_waits, self._fetch)
+
+    def ask_levels(self) -> None:
+        """Have the levels at the seats fetched, on the same terms."""
+        self._ask_once(self._levels_wait, self._fetch_levels)
 
     def take_answer(self) -> tuple[str, Answer] | None:
         """The oldest answer nobody took yet, with the name of its action."""
         return self._answers.popleft() if self._answers else None
+
+    def _ask_once(self, waits: Event, fetch: Callable[[], None]) -> None:
+        if not waits.is_set() and self.clock() >= self._retry_at_s:
+            waits.set()
+            self._put(_RANK_PICTURE, fetch)
 
     def _put(self, rank: int, job: Callable[[], None] | None) -> None:
         self._jobs.put((rank, next(self._order), job))
@@ -115,6 +130,13 @@ class Courier:
             self._lose()
         else:
             self.picture = Picture(sheet, snapshot, self.clock())
+
+    def _fetch_levels(self) -> None:
+        self._levels_wait.clear()
+        try:
+            self.levels = Levels(self._link.levels(), self.clock())
+        except UNREACHABLE:
+            self._lose()
 
     def _lose(self) -> None:
         self._retry_at_s = self.clock() + RETRY_S

@@ -12,7 +12,8 @@ from typing import Literal, NamedTuple
 
 from rich.cells import cell_len, set_cell_size
 
-from beamctl.snapshot import Answer, SheetView, Snapshot
+from beamctl.desk.box import Box
+from beamctl.snapshot import Answer, SeatLevel, SheetView, Snapshot
 
 Role = Literal[
     "dim", "text", "live", "attention", "alarm", "big", "big-live", "big-attention", "big-alarm"
@@ -39,6 +40,9 @@ class View:
     stale_s: float | None = None  # age of the picture once it may no longer be trusted
     answer: tuple[str, Answer] | None = None  # title of the newest action, and what became of it
     asks_leave: bool = False
+    asks_word: bool = False  # after a trip, the first of the two keys that open the box
+    box: Box | None = None
+    levels: tuple[SeatLevel, ...] | None = None  # None while none came, or those that did are old
     dot: str = "█"
 
 

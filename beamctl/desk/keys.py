@@ -25,8 +25,15 @@ LEAVE = DeskKey(
     ("ctrl+q", "ctrl+c"),
     "Leaves the desk and changes no sound; asks for the key again while OPEN.",
 )
+SCREENS = {
+    screen.name: screen
+    for screen in (
+        DeskKey("desk", "Desk", ("f2",), "Shows the desk: readings, sheet, beams, panels."),
+        DeskKey("guard", "Guard", ("f7",), "Shows what every seat gets; all keys work there too."),
+    )
+}
 
-_ROWS: tuple[Action | DeskKey, ...] = (*ACTIONS.values(), HELP, LEAVE)
+_ROWS: tuple[Action | DeskKey, ...] = (*ACTIONS.values(), *SCREENS.values(), HELP, LEAVE)
 _NAME_OF = {key: row.name for row in _ROWS for key in row.keys}
 
 # What terminals with the extended keyboard protocol call keys of the number pad.
@@ -39,6 +46,23 @@ _NUMBER_PAD = {
 
 _SIGNS = {"asterisk": "*", "plus": "+", "minus": "-", "full_stop": ".", "slash": "/"}
 _SHORT = {"insert": "Ins", "delete": "Del"}
+
+
+ENTERS = ("enter", "kp_enter")  # what ends a box and the caution, whatever GO is bound to
+
+
+@dataclass(frozen=True, slots=True)
+class Press:
+    """One key press: what it is bound to, the key, and the sign that it types."""
+
+    name: str
+    key: str
+    sign: str
+
+    @property
+    def counts_once(self) -> bool:
+        """True for what must not repeat while the key is held."""
+        return self.name == "go" or self.key in ENTERS
 
 
 @dataclass(frozen=True, slots=True)

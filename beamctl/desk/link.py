@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Protocol
 
-from beamctl.snapshot import Answer, SheetView, Snapshot
+from beamctl.snapshot import Answer, SeatLevel, SheetView, Snapshot
 
 
 class HostLink(Protocol):
@@ -22,7 +22,11 @@ class HostLink(Protocol):
         """Everything now."""
         ...
 
-    def act(self, name: str, **arguments: object) -> Answer:
+    def levels(self) -> tuple[SeatLevel, ...]:
+        """Every seat and crew point now; empty while the guard has measured none."""
+        ...
+
+    def act(self, name: str, /, **arguments: object) -> Answer:
         """Ask for the action `name` of the registry; `arguments` are the fields of its event."""
         ...
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from beamctl.caution import CAUTION_LINE, CAUTION_TEXT
-from beamctl.desk import keys
+from beamctl.desk import guardline, keys
 from beamctl.desk.format import (
     BLANK,
     Role,
@@ -140,9 +140,12 @@ def notice_row(view: View | None, width: int, gone: bool = False) -> Row:
         spans.append(Span(f"Leave? Sound goes on. {again} again within 3 s", "attention"))
     notices = view.snapshot.notices
     if notices:
-        spans.append(Span(f"! 1 of {len(notices)}: {notices[0]}", "attention"))
-    joined = [part for span in spans for part in (span, Span("   "))]
-    return fit(joined[:-1] or [Span("no notices")], width)
+        # Only its mark is lit: a full line in amber would light up the booth.
+        spans.append(Span(f"! 1 of {len(notices)}:", "attention"))
+    joined = [part for span in spans for part in (span, Span("   "))][:-1]
+    if notices:
+        joined.append(Span(f" {notices[0]}"))
+    return fit(joined or [Span("no notices")], width)
 
 
 def legend_rows(width: int) -> list[Row]:
@@ -171,8 +174,9 @@ def help_rows(width: int, height: int, notices: tuple[str, ...] = ()) -> list[Ro
         first, *more = wrap(f"{title}: {text}", width - 13, 4)
         rows.append((Span(pad(printed, 13), "text"), Span(first)))
         rows += [(Span(" " * 13 + line),) for line in more]
-    marks = "  ".join(f"{mark} {state}" for state, mark in MARKS.items())
-    rows += [BLANK, *[(Span(line),) for line in wrap(marks, width, 3)]]
+    for marks in (MARKS, guardline.MARKS):
+        said = "  ".join(f"{mark} {state}" for state, mark in marks.items())
+        rows += [(Span(line),) for line in wrap(said, width, 3)]
     for number, notice in enumerate(notices, 1):
         rows += [(Span(line, "attention"),) for line in wrap(f"! {number}: {notice}", width, 4)]
     rows += [BLANK, *[(Span(cut(line, width)),) for line in CAUTION_TEXT.splitlines()]]

@@ -6,6 +6,8 @@ from dataclasses import dataclass
 
 from beamctl.desk.readings import HEIGHT
 
+READINGS_FROM = 34  # rows; a shorter Guard screen has the readings in one line
+
 
 @dataclass(frozen=True, slots=True)
 class Plan:
@@ -17,9 +19,9 @@ class Plan:
     gap: int
 
 
-def plan(height: int, legend: int, panels: int) -> Plan:
-    """Share out what readings, sink, notices and `legend` leave of `height` among the rest."""
-    room = height - HEIGHT - 2 - legend
+def plan(height: int, panels: int) -> Plan:
+    """Share out what readings, guard and sink leave of `height` rows, those above notices."""
+    room = height - HEIGHT - 2
     gap = 1 if room >= 14 else 0
     room = max(room - 3 * gap, 0)
     panel_rows = min(panels, max(1, room // 8), room)

@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+from beamctl.caution import CAUTION_LINE
 from beamctl.desk import glyphs
 from beamctl.desk.format import BLANK, Role, Row, Span, View, clock, cut, fit, length, level, wrap
-from beamctl.snapshot import CueText, PanelView, Snapshot
+from beamctl.desk.guardline import SILENT
+from beamctl.snapshot import CueText, GuardView, Snapshot
 
 HEIGHT = 2 * glyphs.ROWS + 1
-_STEADY = glyphs.width_of("-00.0")  # small print beside a running number must not jump about
-_LEAST_PRINT = 8  # narrower small print than this is left out
+_STEADY = "00.0"  # small print beside a running number must not jump about
+_LEAST_PRINT = 6  # narrower small print than this is left out
+_GUARD_CELLS = glyphs.width_of("CAPPING -0.0")  # the widest that the guard has to say
 
 _EMPTY = Span("")
 
@@ -18,22 +21,45 @@ _OUTPUT_ROLE: dict[str, Role] = {
     "TRIPPED": "big-alarm",
     "LOST": "big-alarm",
 }
+_GUARD_ROLE: dict[str, Role] = {
+    "CLEAR": "big",
+    "NEAR": "big-attention",
+    "CAPPING": "big-attention",
+}
 
 
 def readings(view: View, width: int) -> list[Row]:
-    """HEIGHT rows: cue standing by and output above, seconds since GO and level below."""
+    """HEIGHT rows: cue standing by and output above, seconds since GO and the guard below."""
     left = width * 11 // 20
-    right = width - left
-    upper = _beside(_standby(view, left), _output(view, right), left)
-    lower = _beside(_since_go(view, left), _loudest(view, right), left)
-    between = _beside([_left_word(view)], [_right_word(view.snapshot)], left)
-    return [fit(row, width) for row in (*upper, *between, *lower)]
+    upper = _beside(_standby(view, left - 2), _output(view, width - left), left)
+    left = max(min(left, width - _GUARD_CELLS), 0)
+    lower = _beside(_since_go(view, left - 1), _guard(view, width - left), left)
+    return [fit(row, width) for row in (*upper, between(view), *lower)]
 
 
-def loudest(panels: tuple[PanelView, ...]) -> PanelView | None:
-    """The panel with the highest feed peak, None when no panel is driven."""
-    driven = [panel for panel in panels if panel.peak_db is not None]
-    return max(driven, key=lambda panel: panel.peak_db or 0.0, default=None)
+def between(view: View) -> Row:
+    """The words between the readings: what to distrust, what Enter would do, what became of it."""
+    seen = view.snapshot
+    spans = []
+    if view.stale_s is not None:
+        spans.append(Span(f"STALE: as it was {clock(view.stale_s)} s ago", "alarm"))
+    elif view.asks_word and seen.output == "TRIPPED":
+        spans.append(Span("READY: Enter opens a box for a typed word", "attention"))
+    elif seen.arming and view.box is None:
+        return _ready(seen)
+    if seen.holding:
+        more = "" if spans or view.answer else ": glides and follow-ons stand still"
+        spans.append(Span(f"HOLDING{more}", "attention"))
+    spans += _answer(view)
+    return tuple(part for span in spans for part in (Span("   "), span))[1:]
+
+
+def _ready(seen: Snapshot) -> Row:
+    """What the second key does, and the caution beside it."""
+    if seen.output == "SHUT" and seen.unvouched:
+        return (Span("READY: Enter asks who answers for a house without seats", "attention"),)
+    what = "restores" if seen.output == "HUSHED" else "arms"
+    return Span(f"READY: Enter {what}", "attention"), Span("  "), Span(CAUTION_LINE, "text")
 
 
 def _standby(view: View, width: int) -> list[Row]:
@@ -44,7 +70,8 @@ def _standby(view: View, width: int) -> list[Row]:
     barred = view.snapshot.states.get(ref) == "barred"
     caption = Span(f"BARRED {ref}", "attention") if barred else Span(f"stand by {ref}")
     role: Role = "big-attention" if barred else "big"
-    small = [caption, *_small(cue.title, "text"), *_small(cue.note, "dim")]
+    note = view.snapshot.barred.get(ref, cue.note) if barred else cue.note
+    small = [caption, *_small(cue.title, "text"), *_small(note, "dim")]
     return _block(ref, role, small, view.dot, width)
 
 
@@ -60,15 +87,27 @@ def _since_go(view: View, width: int) -> list[Row]:
     else:
         small = [Span("s since GO" if seconds < 60.0 else "since GO"), Span(f"newest {newest}")]
     reading = "--" if seconds is None else clock(seconds)
-    return _block(reading, "big", [*small, *_answer(view)], view.dot, width, _STEADY)
+    return _block(reading, "big", small, view.dot, width, _STEADY)
 
 
-def _loudest(view: View, width: int) -> list[Row]:
-    panel = loudest(view.snapshot.panels)
-    if panel is None:
-        return _block("--", "big", [Span("exact zero")], view.dot, width, _STEADY)
-    small = [Span("dB, loudest"), Span(f"panel {panel.name}")]
-    return _block(level(panel.peak_db), "big", small, view.dot, width, _STEADY)
+def _guard(view: View, width: int) -> list[Row]:
+    """State and headroom; in place of a headroom, why nothing may sound."""
+    guard = view.snapshot.guard
+    role = _GUARD_ROLE.get(guard.state, "big-alarm")
+    if guard.state in SILENT:
+        why = [Span("guard"), *_small(guard.reason, "dim")]
+        return _block(guard.state, role, why, view.dot, width)
+    small = [Span("guard, dB left")] if guard.headroom_db is not None else [Span("guard")]
+    steady = f"{guard.state} {_STEADY}"
+    return _block(_reading(guard, width), role, small, view.dot, width, steady)
+
+
+def _reading(guard: GuardView, width: int) -> str:
+    """State and headroom; far over a cap the tenths give way, in a small terminal the number."""
+    headroom = guard.headroom_db
+    whole = "--" if headroom is None else f"{headroom:.0f}"
+    readings = (f"{guard.state} {level(headroom)}", f"{guard.state} {whole}", guard.state)
+    return next((text for text in readings if glyphs.width_of(text) <= width), guard.state)
 
 
 def _small(text: str, role: Role) -> list[Span]:
@@ -87,34 +126,22 @@ def _answer(view: View) -> list[Span]:
     return [Span(f"{title} REFUSED: {why}", "attention")]
 
 
-def _left_word(view: View) -> Row:
-    if view.stale_s is not None:
-        return (Span(f"STALE: as it was {clock(view.stale_s)} s ago", "alarm"),)
-    if view.snapshot.holding:
-        return (Span("HOLDING: glides and follow-ons stand still", "attention"),)
-    return BLANK
-
-
-def _right_word(seen: Snapshot) -> Row:
-    if not seen.arming:
-        return BLANK
-    what = "restores" if seen.output == "HUSHED" else "arms"
-    return (Span(f"READY: Enter {what}", "attention"),)
-
-
 def _cue(view: View, ref: str) -> CueText:
     return next((cue for cue in view.sheet.cues if cue.ref == ref), CueText(ref, ""))
 
 
 def _block(
-    reading: str, role: Role, small: list[Span], dot: str, width: int, field: int = 0
+    reading: str, role: Role, small: list[Span], dot: str, width: int, steady: str = ""
 ) -> list[Row]:
-    """A big reading, then small print; a reading too wide for glyphs is written out instead."""
-    wide = max(glyphs.width_of(reading), field)
-    if wide > width:
+    """A big reading, then small print; a reading too wide for glyphs is written out instead.
+
+    The small print stands where it would beside `steady`, unless the reading is wider.
+    """
+    if glyphs.width_of(reading) > width:
         written = (Span(cut(reading, width), role),)
         return [BLANK, BLANK, written, BLANK, BLANK]
-    room = width - wide - 4
+    wide = max(glyphs.width_of(reading), min(glyphs.width_of(steady), width))
+    room = width - wide - 2
     if room < _LEAST_PRINT:
         small = []
     lines: list[Span] = []

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from beamctl.desk.format import BLANK, Role, Row, Span, View, clock, fit, pad, two_ends
+from beamctl.desk.format import BLANK, Role, Row, Span, View, clock, fit, pad, two_ends, wrap
 from beamctl.snapshot import CueText, Snapshot
 
 MARKS = {
@@ -22,21 +22,29 @@ _ROLES: dict[str, Role] = {
 SOUNDING = ("running", "tailing")
 
 NOTE_FROM = 8  # rows; in a shorter sheet the note stands beside the big number only
+_INDENT = 11  # cells, to where titles begin
 REACH = 100  # cells; a state further from its title than this is hard to follow
 
 
 def sheet_rows(view: View, width: int, height: int) -> list[Row]:
-    """`height` rows around the cue standing by; a heading, and every sounding cue if it fits."""
+    """`height` rows around the cue standing by; a heading, and every sounding cue if it fits.
+
+    Below a barred cue that stands by is why; below every barred cue where there is room for it.
+    """
     if height < 1:
         return []
+    below = _below(view, width, height)
+    indexes = shown(view, height - 1 - len(below))
+    rest = height - 1 - len(below) - len(indexes)
     rows = [_heading(view, width)]
-    cues, seen = view.sheet.cues, view.snapshot
-    note_rows = 1 if height >= NOTE_FROM and _note(view) else 0
-    for index in shown(view, height - 1 - note_rows):
-        rows.append(cue_row(cues[index], seen, width))
-        if note_rows and cues[index].ref == seen.standby:
-            rows.append(fit((Span(" " * 11 + cues[index].note),), width))
-    return rows + [BLANK] * (height - len(rows))
+    for cue in (view.sheet.cues[index] for index in indexes):
+        rows.append(cue_row(cue, view.snapshot, width))
+        if cue.ref == view.snapshot.standby:
+            rows += below
+        elif (why := _why(cue.ref, view.snapshot, width, 1)) and rest:
+            rows += why
+            rest -= 1
+    return [*rows, *[BLANK] * (height - len(rows))]
 
 
 def shown(view: View, rows: int) -> list[int]:
@@ -109,5 +117,21 @@ def _anchor(seen: Snapshot, refs: list[str]) -> int:
     return 0
 
 
-def _note(view: View) -> str:
-    return next((c.note for c in view.sheet.cues if c.ref == view.snapshot.standby), "")
+def _below(view: View, width: int, height: int) -> list[Row]:
+    """What stands below the cue standing by: why it is barred, or its note in a taller sheet."""
+    seen = view.snapshot
+    why = _why(seen.standby, seen, width, 2)
+    if why or height < NOTE_FROM:
+        return why[: max(height - 2, 0)]
+    note = next((c.note for c in view.sheet.cues if c.ref == seen.standby), "")
+    return [_under(note, width)] if note else []
+
+
+def _why(ref: str, seen: Snapshot, width: int, rows: int) -> list[Row]:
+    why = seen.barred.get(ref, "") if state_of(ref, seen) == "barred" else ""
+    lines = wrap(why, min(width, REACH) - _INDENT, rows)
+    return [_under(line, width) for line in lines]
+
+
+def _under(text: str, width: int) -> Row:
+    return fit((Span(" " * _INDENT + text),), width)

@@ -16,10 +16,12 @@ from pydantic import BaseModel
 
 from beamctl.acoustics.cells import CellMap, cell_map, grid_positions, hex_positions, loom
 from beamctl.errors import ShowError
-from beamctl.files.folder import MISSING, Unreadable, folder_trouble, read_text, trouble
+from beamctl.files.folder import MISSING, Unreadable, folder_trouble, read_text
 from beamctl.files.locate import Key
+from beamctl.files.measurement import panel_digest, read_measurement
 from beamctl.files.panel_csv import read_cells
 from beamctl.files.problems import Problem, Severity, Source, shown
+from beamctl.files.signing import seal_of_parts
 from beamctl.files.sounds import read_sounds
 from beamctl.files.tables import read_table
 from beamctl.show.aims import check_aims
@@ -67,6 +69,7 @@ class _Reading:
         self.folder = folder
         self.problems: list[Problem] = []
         self.digests: dict[str, str] = {}
+        self.texts: dict[str, str] = {}
         self.sources: dict[str, Source] = {}
         self.cut: set[tuple[str, str]] = set()
 
@@ -80,19 +83,21 @@ class _Reading:
         guard, wire = self.table(GUARD, Guard), self.table(WIRE, Wire)
         cells = self.cells(rig) if rig else {}
         sounds = read_sounds(self.folder, sheet, partial(self.tell, SHEET)) if sheet else {}
-        parts = Parts(sheet, rig, house, guard, cells, frozenset(self.cut))
+        seal = seal_of_parts(self.texts.get(GUARD, ""), rig, self.digests) if rig else ""
+        parts = Parts(sheet, rig, house, guard, cells, frozenset(self.cut), seal)
         for finding in chain(check_names(parts), check_aims(parts)):
             self.tell(finding.file, finding.where, finding.what, finding.severity)
         if not (sheet and rig and house) or cells.keys() != rig.panel.keys():
             return None
         guard, wire = guard or Guard(format=1), wire or Wire(format=1)
         home = str(self.folder.absolute())
-        return Show(home, sheet, rig, house, guard, wire, cells, sounds, self.digests)
+        return Show(home, sheet, rig, house, guard, wire, cells, sounds, self.digests, seal)
 
     def table(self, file: str, model: type[M]) -> M | None:
         """One TOML file; None when it is not there or nothing can be made of it."""
         try:
             text, self.digests[file] = read_text(self.folder, file)
+            self.texts[file] = text
         except Unreadable as error:
             if str(error) != MISSING or file in ABSENT:
                 severity, what = ABSENT[file] if str(error) == MISSING else ("error", str(error))
@@ -106,15 +111,32 @@ class _Reading:
         return table.model
 
     def cells(self, rig: Rig) -> dict[str, CellMap]:
-        """Cell maps by panel, of every panel that has one; measured files are looked for too."""
+        """Cell maps by panel, of every panel that has one; measurements are looked into too."""
         maps: dict[str, CellMap] = {}
         for name, spec in rig.panel.items():
-            if spec.measured and (what := trouble(self.folder, spec.measured)):
-                self.tell(RIG, ("panel", name, "measured"), f"{shown(spec.measured)}: {what}")
             cells = self.listed(name, spec) if spec.cells is not None else _drawn(spec)
             if cells is not None:
                 maps[name] = cells
+            if spec.measured and (what := self.against_measured(name, spec, cells)):
+                self.tell(RIG, ("panel", name, "measured"), f"{shown(spec.measured)}: {what}")
         return maps
+
+    def against_measured(self, panel: str, spec: PanelSpec, cells: CellMap | None) -> str:
+        """Why the panel is not measured by the file it names; "" when it is."""
+        try:
+            _, self.digests[spec.measured] = read_text(self.folder, spec.measured)
+            found = read_measurement(self.folder / spec.measured)
+        except Unreadable as error:
+            return str(error)
+        except ShowError as error:
+            return ": ".join(["no measurement of a panel", *error.do.split("\n")[:1]])
+        if found.panel != panel:
+            return f'measures panel "{found.panel}"'
+        if found.against:
+            return f"a measurement that did not pass: {found.against[0]}"
+        if cells is not None and found.of != panel_digest(spec, cells):
+            return 'the panel was changed since; measure it again, or write measured = ""'
+        return ""
 
     def listed(self, panel: str, spec: PanelSpec) -> CellMap | None:
         """The cell map of a panel whose cells are in a CSV file."""

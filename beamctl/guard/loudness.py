@@ -33,7 +33,7 @@ class Loudness:
     """Mean square pressures of one show's steps."""
 
     def __init__(self, show: Show, field: Field, powers: Powers) -> None:
-        self._show, self._field = show, field
+        self._field = field
         air = Air(**show.house.air.model_dump())
         self._panels = [
             _Panel(show, field, powers, name, sound_speed_m_s(air)) for name in field.panels

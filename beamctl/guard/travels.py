@@ -86,8 +86,8 @@ class Travel(NamedTuple):
 
 def travels(show: Show) -> Iterator[Travel]:
     """Every cue of the sheet that a GO or a follow-on reaches, not always in the sheet's order."""
-    leading = {cue.ref for cue in show.sheet.cue if cue.then is not None}
-    others = {cue.ref for cue in show.sheet.cue} - leading
+    leading = [cue.ref for cue in show.sheet.cue if cue.then is not None]
+    others = {cue.ref for cue in show.sheet.cue}.difference(leading)
     yield from _sampled(show, _played(show), others)
     for ref in leading:
         alone = _without_follow_on(show, ref)

@@ -56,6 +56,10 @@ class Watch:
         self._held_ago_s = np.full(len(feeds), np.inf)
         self.trip = ""
 
+    def begin(self) -> None:
+        """A stream begins, or is joined: what was on its way before will not be told."""
+        self._under_way.clear()
+
     def take(self, block: NDArray[np.float32]) -> Array:
         """Read the next step (step_n, channels); returns the ceilings (panels,) from now on."""
         step = self._estimator.take(block)

@@ -78,3 +78,12 @@ class Dose:
     def percent(self) -> Array:
         """(L,) percent over the window."""
         return 100.0 * self._windows.mean()
+
+    def counted(self) -> Array:
+        """(2, L): percent over the window and since doors, for a guard that takes over."""
+        return np.stack((self.percent, self.since_doors))
+
+    def carry_on(self, counted: Array) -> None:
+        """Take over what another had `counted`; it stays in the window for as long as one lasts."""
+        self._windows.add(counted[0] / 100.0 * self._windows.averaging_s / self._windows.step_s)
+        self.since_doors = counted[1].copy()

@@ -10,12 +10,12 @@ import queue
 import time
 from collections import deque
 from collections.abc import Callable, Iterable
+from dataclasses import asdict
 from datetime import datetime
 from pathlib import Path
 from typing import Any
 
 from beamctl.engine import layout as at
-from beamctl.engine.chain import wires_of
 from beamctl.engine.drift import Drift
 from beamctl.errors import BeamctlError, DeviceError
 from beamctl.files.reader import load_show
@@ -23,12 +23,15 @@ from beamctl.host import counters
 from beamctl.host.asking import event_of
 from beamctl.host.batches import Batches
 from beamctl.host.desks import Door
+from beamctl.host.guarding import Guarding
 from beamctl.host.journal import Journal
 from beamctl.host.keeper import Keeper
 from beamctl.host.link import encode
+from beamctl.host.loading import changed_files
 from beamctl.host.picture import Picture
 from beamctl.host.places import new_journal, socket_address
 from beamctl.host.priority import HOST_PRIORITY, ask_for_real_time
+from beamctl.host.warden import Warden
 from beamctl.show.events import Acknowledge, Event
 from beamctl.show.player import Player
 from beamctl.show.records import FINAL, Record
@@ -40,6 +43,7 @@ SLACK_QUANTA = 1  # between what the engine has reached and the sample an event 
 LEASE_S = 0.15
 SNAPSHOT_S = 0.04
 COUNTERS_S = 10.0
+FILES_S = 1.0
 STOP_S = 5.0
 
 
@@ -58,7 +62,9 @@ class Host:
         self._picture = Picture(self.show)
         self._notices: deque[str] = deque(maxlen=100)
         self._batches = Batches(self._write, self._player.moved)
-        self._ratings = [wire.rating for wire in wires_of(self.show)]
+        self._warden = Warden(self.show, self._hear_guard)
+        self._guarding = Guarding(self.show, self._warden, self._player)
+        self._write(self._guarding.begins())
         self._drift = Drift(self.show.rig.rate_hz)
         self._busy = "starting"
         self._left: dict[str, Any] | None = None
@@ -68,7 +74,9 @@ class Host:
         self._opened_once = False
         self._snapshot: tuple[float, bytes] = (-1.0, b"")
         self._counted_at = time.monotonic()
+        self._files_at, self._changed = 0.0, False
         self._keeper = Keeper(self.show, sink, self._hear)
+        self._warden.start()
         self._keeper.start()
 
     def run(self) -> int:
@@ -101,8 +109,10 @@ class Host:
     def _tick(self) -> None:
         if self._keeper.watch():
             self._notice("engine stalled and was ended")
-        if self._player.output in ("SHUT", "OPEN", "HUSHED"):
-            self._renew_lease()
+        self._trip(self._guarding.tick(self._now()))
+        self._look_at_files()
+        if self._player.output in ("SHUT", "OPEN", "HUSHED", "TRIPPED"):
+            self._live()
             self._tell_final_stage()
             if not self._batches.open:  # what hangs on a GO waits until its sample is certain
                 ahead = round(AHEAD_S * self.show.rig.rate_hz)
@@ -118,18 +128,21 @@ class Host:
 
     # -- the final stage -------------------------------------------------------------------------
 
-    def _renew_lease(self) -> None:
-        """The door that the guard will use: drive ceilings, and up to which frame they hold."""
+    def _live(self) -> None:
+        """Answer for what sounds: a host that stalls lets it end."""
         if (outlet := self._keeper.outlet) is not None:
             life = round(LEASE_S * self.show.rig.rate_hz)
-            outlet.grant(outlet.count(at.READ) + life, self._ratings)
+            outlet.host_lives(outlet.count(at.READ) + life)
             self._drift.note(time.monotonic_ns(), outlet.count(at.LAST_READ))
 
     def _tell_final_stage(self) -> None:
         """Put into the journal what the final stage did, and act on what nobody asked for."""
         outlet = self._keeper.outlet
         for event in outlet.events() if outlet is not None else ():
-            if event.name in ("opened", "hushed", "lease-over"):
+            if event.name == "granted" and outlet is not None:
+                ceilings = {"ceilings": outlet.granted(event.value)}
+                self._write([Record(event.sample, "grant", args=ceilings)])
+            elif event.name in ("opened", "hushed", "lease-over", "host-over"):
                 args = {"open": int(event.name == "opened"), "n": event.value, "why": event.name}
                 self._write([Record(event.sample, "gate", args=args)])
             elif event.name == "dry":
@@ -137,9 +150,39 @@ class Host:
             else:
                 self._write([Record(event.sample, "fault", args={event.name: event.value})])
                 self._notice(f"{event.name} on feed {event.value}")
+            if event.name == "host-over" and self._player.output == "OPEN":
+                self._write(self._player.sink("host-over", event.sample))
+                self._notice("the host stalled, and the output was hushed; * then Enter restores")
             if event.name == "lease-over" and self._player.output == "OPEN":
-                self._write(self._player.sink("lease-over", event.sample))
-                self._notice("the lease ran out: the host stalled; * then Enter restores")
+                why = self._warden.blind or "it stalled"
+                self._trip(
+                    self._player.trip(
+                        f"the guard's lease ran out: {why}", event.sample, "lease-over"
+                    )
+                )
+
+    # -- the guard -------------------------------------------------------------------------------
+
+    def _hear_guard(self, message: dict[str, Any]) -> None:
+        self._inbox.put(lambda: self._trip(self._guarding.hear(message, self._now())))
+
+    def _trip(self, records: list[Record]) -> None:
+        """Do what the guard made necessary: silence at once, and a notice."""
+        for record in records:
+            if record.what == "trip":
+                if (outlet := self._keeper.outlet) is not None:
+                    outlet.hush()
+                self._notice(f"TRIPPED, {record.args['reason']}")
+        self._write([record for record in records if record.what not in FINAL])
+
+    def _look_at_files(self) -> None:
+        """Say it when guard, rig or house change on disk: what runs keeps what it began with."""
+        now = time.monotonic()
+        if now - self._files_at > FILES_S and not self._changed:
+            self._files_at = now
+            if changed := changed_files(self.show):
+                self._changed = True
+                self._notice(f"{changed} changed on disk: this host keeps the caps it began with")
 
     # -- the engine ------------------------------------------------------------------------------
 
@@ -171,6 +214,7 @@ class Host:
         self._drift = Drift(self.show.rig.rate_hz)
         start = self._keeper.opened(ready)
         self._write([Record(start, "stream", args=ready)])
+        self._warden.attach(str(self._keeper.outlet_path))
         self._send(self._player.sink("sink-open", self._stamp()))
 
     def _sink_lost(self, message: dict[str, Any]) -> None:
@@ -247,6 +291,8 @@ class Host:
         do = message.get("do") if isinstance(message, dict) else None
         if do == "sheet":
             return encode(self._picture.sheet())
+        if do == "levels":
+            return encode([asdict(level) for level in self._guarding.levels()])
         if do == "snapshot":
             return self._current_snapshot()
         if do == "stop":
@@ -260,6 +306,8 @@ class Host:
         sample = self._stamp()
         self._send(self._player.advance(sample))  # so that the answer is to this event alone
         records = self._player.handle(event, sample)
+        if any(record.what == "clear" for record in records):
+            self._warden.clear()
         if isinstance(event, Acknowledge) and self._notices:
             self._notices.popleft()
         self._send(records)
@@ -274,7 +322,9 @@ class Host:
         if now - self._snapshot[0] > SNAPSHOT_S:
             keeper = self._keeper
             engine = counters.view(self.show, self._sink, keeper, self._drift, self._busy)
-            picture = self._picture.snapshot(self._player, keeper.status, engine, self._notices)
+            picture = self._picture.snapshot(
+                self._player, keeper.status, engine, self._guarding.view(), self._notices
+            )
             self._snapshot = (now, encode(picture))
         return self._snapshot[1]
 
@@ -286,7 +336,7 @@ class Host:
         self._keeper.send({"stop": True})
         until = time.monotonic() + STOP_S
         while self._left is None and not self._gone and time.monotonic() < until:
-            self._renew_lease()
+            self._live()
             self._take(TICK_S)
         self._take(0.0)
         self._tell_final_stage()
@@ -295,5 +345,6 @@ class Host:
         if self._left is not None:
             self._write([Record(self._left["written"], "left", args=self._left)])
         self._keeper.end(STOP_S)
+        self._warden.end(STOP_S)
         self.journal.close()
         self._door.close()

@@ -45,7 +45,7 @@ class Keeper:
     def __init__(self, show: Show, sink: str, post: Post) -> None:
         self._show, self._sink, self._post = show, sink, post
         key = show_key(Path(show.folder))
-        self._outlet_path = memory_folder() / f"{key}.outlet"
+        self.outlet_path = memory_folder() / f"{key}.outlet"
         self._status_path = memory_folder() / f"{key}.status"
         self.status = Status.create(self._status_path)
         self.outlet: Outlet | None = None
@@ -70,7 +70,7 @@ class Keeper:
             self._show.folder,
             self._sink,
             start,
-            str(self._outlet_path),
+            str(self.outlet_path),
             str(self._status_path),
             str(state_folder() / "engine.log"),
         )
@@ -97,7 +97,7 @@ class Keeper:
     def opened(self, ready: dict[str, Any]) -> int:
         """The engine's sink is open: join its memory; returns the number of its first frame."""
         self.ready = ready
-        self.outlet = Outlet.attach(self._outlet_path)
+        self.outlet = Outlet.attach(self.outlet_path)
         self._look_at = None
         return self.outlet.start
 
@@ -190,7 +190,7 @@ class Keeper:
                 self._process.join(wait_s)
         if self._looking is not None:
             self._looking.kill()
-        for path in (self._outlet_path, self._status_path):
+        for path in (self.outlet_path, self._status_path):
             with contextlib.suppress(OSError):
                 path.unlink(missing_ok=True)
         with contextlib.suppress(OSError):  # other hosts may still use it

@@ -15,7 +15,9 @@ from beamctl.snapshot import (
     BeamView,
     CueText,
     EngineView,
+    GuardView,
     PanelView,
+    SeatLevel,
     SheetView,
     Snapshot,
 )
@@ -45,7 +47,12 @@ class Link:
         """Everything now."""
         return read_snapshot(self._ask({"do": "snapshot"}))
 
-    def act(self, name: str, **arguments: object) -> Answer:
+    def levels(self) -> tuple[SeatLevel, ...]:
+        """Every seat and crew point, as the guard measured it last."""
+        rows: Any = self._ask({"do": "levels"})
+        return tuple(SeatLevel(**row | {"at_m": tuple(row["at_m"])}) for row in rows)
+
+    def act(self, name: str, /, **arguments: object) -> Answer:
         """Ask for an action of the registry."""
         return Answer(**self._ask({"do": "act", "name": name, "arguments": arguments}))
 
@@ -86,4 +93,5 @@ def read_snapshot(row: dict[str, Any]) -> Snapshot:
     )
     panels = tuple(PanelView(**panel) for panel in row["panels"])
     rest = {"beams": beams, "panels": panels, "engine": EngineView(**row["engine"])}
-    return Snapshot(**row | rest | {"notices": tuple(row["notices"])})
+    rest |= {"guard": GuardView(**row["guard"]), "notices": tuple(row["notices"])}
+    return Snapshot(**row | rest)

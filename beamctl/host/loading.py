@@ -39,3 +39,16 @@ def digests(show: Show) -> dict[str, str]:
         with Path(facts.path).open("rb") as file:
             found[f"sounds/{name}"] = hashlib.file_digest(file, "sha256").hexdigest()
     return found
+
+
+def changed_files(show: Show) -> str:
+    """Which of guard, rig and house are not on disk as they were read; "" when all are."""
+    found = []
+    for name in ("guard.toml", "rig.toml", "house.toml"):
+        try:
+            now = hashlib.sha256((Path(show.folder) / name).read_bytes()).hexdigest()
+        except OSError:
+            now = ""
+        if now != show.digests.get(name, now):
+            found.append(name)
+    return ", ".join(found)

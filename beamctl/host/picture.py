@@ -20,7 +20,15 @@ from beamctl.show.plan import BeamPlan
 from beamctl.show.player import Player
 from beamctl.show.show import Show
 from beamctl.show.targets import frame_of
-from beamctl.snapshot import BeamView, CueText, EngineView, PanelView, SheetView, Snapshot
+from beamctl.snapshot import (
+    BeamView,
+    CueText,
+    EngineView,
+    GuardView,
+    PanelView,
+    SheetView,
+    Snapshot,
+)
 
 Aim = tuple[float, float, float, float]  # direction and focus in 1/metres, rounded
 Angles = tuple[float, float]
@@ -45,7 +53,12 @@ class Picture:
         return SheetView(1, self.show.sheet.title, tuple(cues))
 
     def snapshot(
-        self, player: Player, status: Status, engine: EngineView, notices: Iterable[str]
+        self,
+        player: Player,
+        status: Status,
+        engine: EngineView,
+        guard: GuardView,
+        notices: Iterable[str],
     ) -> Snapshot:
         """Everything at the sample the engine has reached."""
         now = engine.rendered
@@ -73,6 +86,9 @@ class Picture:
             panels=tuple(self._panels(status)),
             engine=engine,
             notices=tuple(notices),
+            guard=guard,
+            barred=dict(player.barred),
+            unvouched=player.locks.unvouched,
         )
 
     def _beam(self, plan: BeamPlan, now: int) -> BeamView:

@@ -6,7 +6,8 @@ import contextlib
 import os
 
 RENDER_PRIORITY = 20  # above everything ordinary, below a sound server (common practice)
-HOST_PRIORITY = 10  # it renews the lease; all its threads, or one would wait for another's lock
+GUARD_PRIORITY = 15  # it renews the lease
+HOST_PRIORITY = 10  # it answers for the show; all its threads, or one would wait for another
 RING_MS_REAL_TIME = 12.0
 RING_MS_ORDINARY = 32.0
 

@@ -17,6 +17,7 @@ from beamctl.show.limits import Guard
 from beamctl.show.order import natural_key
 from beamctl.show.rig import Rig
 from beamctl.show.sheet import Cue, Sheet
+from beamctl.show.standing import why_unsigned
 
 SHEET, RIG, HOUSE, GUARD = "sheet.toml", "rig.toml", "house.toml", "guard.toml"
 Location = tuple[str | int, ...]
@@ -52,6 +53,7 @@ class Parts:
     guard: Guard | None = None
     cells: Mapping[str, CellMap] = field(default_factory=dict)  # by panel
     cut: frozenset[tuple[str, str]] = frozenset()
+    seal: str = ""  # digest of guard, rig and house; "" when the rig could not be read
 
     def whole(self, file: str, table: str) -> bool:
         """True when no entry of the table is missing."""
@@ -69,8 +71,8 @@ def check_names(parts: Parts) -> Iterator[Finding]:
         yield from _bands(parts.rig)
     if parts.house:
         yield from _seats_once(parts.house)
-    if parts.guard and parts.guard.signed is None and parts.whole(GUARD, "signed"):
-        yield Finding(GUARD, (), "unsigned: the tables hold as they are", "warning")
+    if parts.guard and parts.whole(GUARD, "signed"):
+        yield from _signature(parts.guard, parts.seal)
 
 
 def unknown(kind: str, name: str, known: Collection[str]) -> str:
@@ -178,6 +180,14 @@ def _bands(rig: Rig) -> Iterator[Finding]:
         elif band_hz < GOOD_BAND_HZ:
             what = f"{carrier_hz:.0f} leaves the programme {band_hz:.0f} Hz"
             yield Finding(RIG, where, f"{what}, less than {GOOD_BAND_HZ:.0f}", "warning")
+
+
+def _signature(guard: Guard, seal: str) -> Iterator[Finding]:
+    if guard.signed is None:
+        yield Finding(GUARD, (), "unsigned: the tables hold as they are", "warning")
+    elif seal and (why := why_unsigned(guard, seal)):
+        what = f"{why}: unsigned, the tables hold as they are"
+        yield Finding(GUARD, ("signed",), what, "warning")
 
 
 def _seats_once(house: House) -> Iterator[Finding]:

@@ -75,3 +75,17 @@ class Tail(Event):
 @dataclass(frozen=True, slots=True)
 class Acknowledge(Event):
     """Take the oldest notice off the screen."""
+
+
+@dataclass(frozen=True, slots=True)
+class Clear(Event):
+    """Take a trip away, by a typed word; what tripped must be over, and nothing sounds by it."""
+
+    word: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Vouch(Event):
+    """Somebody answers by name for a house without seats, in which nothing can be measured."""
+
+    name: str = ""

@@ -4,14 +4,22 @@ from __future__ import annotations
 
 import ipaddress
 import re
+from difflib import get_close_matches
 from typing import Annotated, Literal
 
 from pydantic import AfterValidator, Field
 
+from beamctl.acoustics.exposure import TABLES
 from beamctl.show.fields import Model, Text
 
-Table = Literal["irpa-1984-public", "irpa-1984-workers", "health-canada-1991"]
 Role = Literal["read", "trigger", "aim", "hush"]
+
+
+def _check_table(name: str) -> str:
+    if name not in TABLES:
+        near = get_close_matches(name, TABLES, n=1)
+        raise ValueError(f'"{near[0]}"' if near else f"a table, one of {', '.join(TABLES)}")
+    return name
 
 
 def _check_listen(text: str) -> str:
@@ -29,6 +37,7 @@ def _check_network(text: str) -> str:
     return text
 
 
+Table = Annotated[str, AfterValidator(_check_table)]
 Listen = Annotated[str, AfterValidator(_check_listen)]
 Network = Annotated[str, AfterValidator(_check_network)]
 

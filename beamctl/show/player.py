@@ -18,10 +18,11 @@ import numpy as np
 from beamctl.acoustics.air import Air, sound_speed_m_s
 from beamctl.show import events
 from beamctl.show.beamstate import MIN_GLIDE_S, BeamState
+from beamctl.show.locks import Locks
 from beamctl.show.plan import BeamPlan, swing_of
 from beamctl.show.records import Record
 from beamctl.show.run import Run
-from beamctl.show.sheet import Act, Cue
+from beamctl.show.sheet import Act
 from beamctl.show.show import Show
 from beamctl.show.standby import after_go, stepped
 from beamctl.show.states import CUE, OUTPUT, CueState, Output, Reason, refusal
@@ -52,6 +53,7 @@ class Player:
 
     def __post_init__(self) -> None:
         self.rate_hz = self.show.rig.rate_hz
+        self.locks = Locks(bool(self.show.house.block))
         self._cues = {cue.ref: cue for cue in self.show.sheet.cue}
         speed = sound_speed_m_s(Air(**self.show.house.air.model_dump()))
         for name, beam in self.show.sheet.beam.items():
@@ -88,7 +90,7 @@ class Player:
         return records + self._settle(until)
 
     def sink(self, event: str, sample: int) -> list[Record]:
-        """What the sink or its engine did: "sink-open", "sink-lost", "lease-over", "sink-close".
+        """What the sink or its engine did: "sink-open", "sink-lost", "host-over", "sink-close".
 
         A new engine is told silently what the beams had. What looped when the last one went comes
         back when somebody arms; all else that ran then is over.
@@ -103,14 +105,21 @@ class Player:
                 records += plan.set_up(sample)
         return records
 
+    def trip(self, reason: str, sample: int, event: str = "trip") -> list[Record]:
+        """The guard ended what sounds, or its lease ran out ("lease-over")."""
+        if (goal := OUTPUT.get((self.output, event))) is None:
+            return []
+        self.locks.tripped = self.locks.tripped or reason
+        told = Record(sample, "trip", who="guard", args={"reason": reason})
+        return [told, self._shut(sample), *self._to(goal, sample, event, "guard")]
+
     def moved(self, records: Iterable[Record], by: int) -> None:
         """The engine took these records `by` samples late: what hangs on them moves along."""
         for ref in {record.cue for record in records if record.cue in self.runs}:
             run = self.runs[ref]
             run.started += by
             run.settles_at += by
-            run.acts = deque((at + by, act) for at, act in run.acts)
-            run.follow = run.follow and (run.follow[0] + by, run.follow[1])
+            run.shift(by)
             if ref == self.newest and self.newest_at is not None:
                 self.newest_at += by
             for plan in self.plans.values():
@@ -120,8 +129,7 @@ class Player:
     def _cut(self, sample: int) -> None:
         self.ready_until, self.held_at = -1, None
         for run in self.runs.values():
-            run.acts.clear()
-            run.follow, run.frozen, run.settles_at = None, 0, sample
+            run.cut(sample)
         for plan in self.plans.values():
             plan.lose(sample)
 
@@ -158,22 +166,17 @@ class Player:
         cue = self._cues[ref]
         for run in self.runs.values():
             if run.follow is not None and run.follow[1] == ref:
-                run.follow = None
-                run.lasts(sample)
+                run.drop_follow(sample)
         self._turn(ref, "go")
         acts = sorted(cue.act, key=lambda act: act.at_s)
         at = deque((sample + round(act.at_s * self.rate_hz), act) for act in acts)
-        self.runs[ref] = Run(ref, sample, at, self._follow(cue, sample), sample)
+        follow = cue.then and (sample + round((cue.then_at_s or 0.0) * self.rate_hz), cue.then)
+        self.runs[ref] = Run(ref, sample, at, follow or None, sample)
         self.newest, self.newest_at = ref, sample
         records = [Record(sample, "go", cue=ref, who=who)]
         while self.runs[ref].due() == sample:
             records += self._act(ref, sample)
         return records
-
-    def _follow(self, cue: Cue, sample: int) -> tuple[int, str] | None:
-        if cue.then is None or cue.then_at_s is None:
-            return None
-        return sample + round(cue.then_at_s * self.rate_hz), cue.then
 
     def _act(self, ref: str, sample: int) -> list[Record]:
         run = self.runs[ref]
@@ -220,6 +223,8 @@ class Player:
         if self.output not in ("SHUT", "HUSHED"):
             why = f"nothing to arm or restore while {self.output}"
             return self._refuse(event, sample, refusal(self.output), why)
+        if refused := self.locks.refusal():
+            return self._refuse(event, sample, *refused)
         self.ready_until = sample + round(READY_S * self.rate_hz)
         return [Record(sample, "ready", who=event.who)]
 
@@ -237,6 +242,8 @@ class Player:
         if goal is None:
             why = f"cannot {act} while {self.output}"
             return self._refuse(event, sample, refusal(self.output), why)
+        if refused := self.locks.refusal():
+            return self._refuse(event, sample, *refused)
         rise = round((RESTORE_RISE_S if act == "restore" else MIN_GLIDE_S) * self.rate_hz)
         gate = Record(sample, "gate", args={"open": 1, "n": rise})
         if act == "arm" and not self.standby and self.show.sheet.cue:
@@ -246,14 +253,28 @@ class Player:
             records += plan.bring_back(sample, RESTORE_RISE_S)
         return records
 
+    def _clear(self, event: events.Clear, sample: int) -> list[Record]:
+        if (goal := OUTPUT.get((self.output, "clear"))) is None:
+            return self._refuse(event, sample, "busy", f"nothing to clear while {self.output}")
+        if refused := self.locks.clear(event.word):
+            return self._refuse(event, sample, *refused)
+        return [Record(sample, "clear", who=event.who), *self._to(goal, sample, "clear", event.who)]
+
+    def _vouch(self, event: events.Vouch, sample: int) -> list[Record]:
+        if refused := self.locks.vouch(event.name):
+            return self._refuse(event, sample, *refused)
+        return [Record(sample, "vouch", who=event.who, args={"name": self.locks.vouched})]
+
     def _hush(self, event: events.Hush, sample: int) -> list[Record]:
+        goal = OUTPUT[self.output, "hush"]
+        return [self._shut(sample), *self._to(goal, sample, "hush", event.who)]
+
+    def _shut(self, sample: int) -> Record:
+        """The record that shuts the gate; what was to come by itself does not."""
         self.ready_until = -1
         for run in self.runs.values():
-            if run.follow is not None:
-                run.follow = None
-                run.lasts(sample)
-        gate = Record(sample, "gate", args={"open": 0, "n": round(MIN_GLIDE_S * self.rate_hz)})
-        return [gate, *self._to(OUTPUT[self.output, "hush"], sample, "hush", event.who)]
+            run.drop_follow(sample)
+        return Record(sample, "gate", args={"open": 0, "n": round(MIN_GLIDE_S * self.rate_hz)})
 
     def _hold(self, event: events.Hold, sample: int) -> list[Record]:
         if self.held_at is not None:
@@ -272,8 +293,7 @@ class Player:
             return self._refuse(event, sample, "busy", "the show is not held")
         wait, self.held_at = sample - self.held_at, None
         for run in self.runs.values():
-            run.acts = deque((at + wait, act) for at, act in run.acts)
-            run.follow = run.follow and (run.follow[0] + wait, run.follow[1])
+            run.shift(wait)
             if run.frozen:
                 run.lasts(sample + run.frozen)
                 run.frozen = 0
@@ -289,10 +309,7 @@ class Player:
         if (self.state(ref), "tail") not in CUE:
             return self._refuse(event, sample, "busy", f"cue {ref} is {self.state(ref)}")
         self._turn(ref, "tail")
-        run = self.runs[ref]
-        run.acts.clear()
-        run.follow = None
-        run.settles_at, run.frozen = sample + round(event.fall_s * self.rate_hz), 0
+        self.runs[ref].cut(sample + round(event.fall_s * self.rate_hz))
         records = [Record(sample, "tail", cue=ref, who=event.who)]
         for plan in self.plans.values():
             if plan.owner == ref:
@@ -378,4 +395,6 @@ _HANDLERS: dict[type[events.Event], Callable[[Player, Any, int], list[Record]]] 
     events.CarryOn: Player._carry_on,
     events.Tail: Player._tail,
     events.Acknowledge: Player._acknowledge,
+    events.Clear: Player._clear,
+    events.Vouch: Player._vouch,
 }

@@ -1,7 +1,8 @@
 """The two state machines, each one table: what the output may do, and what a cue may do.
 
 A missing entry is a refusal; `refusal` gives its reason word. Nothing else decides a transition.
-No entry leads to TRIPPED yet: it is the exposure guard's, and what may be done in it is said here.
+"trip" and "lease-over" are the guard's, "host-over" is a host that stalled. A trip that comes while
+nothing may sound leaves the state as it is; the player remembers it, and lets nobody open.
 """
 
 from __future__ import annotations
@@ -35,7 +36,16 @@ OUTPUT: dict[tuple[Output, str], Output] = {
     ("HUSHED", "hush"): "HUSHED",
     ("TRIPPED", "hush"): "TRIPPED",
     ("LOST", "hush"): "LOST",
-    ("OPEN", "lease-over"): "HUSHED",
+    ("OPEN", "host-over"): "HUSHED",
+    ("OPEN", "lease-over"): "TRIPPED",
+    ("OPEN", "trip"): "TRIPPED",
+    ("HUSHED", "trip"): "TRIPPED",
+    ("TRIPPED", "trip"): "TRIPPED",
+    ("SHUT", "trip"): "SHUT",
+    ("LOST", "trip"): "LOST",
+    ("TRIPPED", "clear"): "HUSHED",
+    ("SHUT", "clear"): "SHUT",
+    ("LOST", "clear"): "LOST",
     ("HUSHED", "restore"): "OPEN",
     ("OPEN", "go"): "OPEN",
     ("SHUT", "sink-lost"): "LOST",

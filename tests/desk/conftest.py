@@ -14,7 +14,9 @@ from beamctl.snapshot import (
     BeamView,
     CueText,
     EngineView,
+    GuardView,
     PanelView,
+    SeatLevel,
     SheetView,
     Snapshot,
 )
@@ -40,6 +42,30 @@ BELL = BeamView(
     (4.0, -8.0), 6.0, False,
 )  # fmt: skip
 
+GUARD = GuardView(
+    "NEAR", "", 2.4, "stalls B4", 40_000.0, 97.6, 100.0, {}, 12.4, "stalls B4",
+    "signed by the depot on 2026-12-01", 10.0,
+)  # fmt: skip
+
+
+def seats_of(block: str = "stalls", rows: str = "ABC", seats: int = 8) -> tuple[SeatLevel, ...]:
+    """A block whose seat B4 is the loudest; the last row is silent."""
+    return tuple(
+        SeatLevel(
+            f"{block} {name}{n + 1}",
+            block,
+            False,
+            (0.55 * (n - seats / 2), 4.5 + 0.9 * r, 1.2),
+            None if r == len(rows) - 1 else 97.6 - 2.5 * abs(n - 3) - 4.0 * abs(r - 1),
+            40_000.0,
+            100.0,
+            12.4,
+        )
+        for r, name in enumerate(rows)
+        for n in range(seats)
+    )
+
+
 SNAPSHOT = Snapshot(
     sheet_version=1,
     output="OPEN",
@@ -55,6 +81,8 @@ SNAPSHOT = Snapshot(
     panels=(PanelView("prow", 64, -12.34, -1.2), PanelView("stern", 16, -40.0, 0.0)),
     engine=EngineView("null", 192_000, 80, 256, 32.0, 1_000_000, 0, 12.4, 3.1),
     notices=(),
+    guard=GUARD,
+    barred={"13": "stalls B4, 40 kHz: 3.2 dB over the cap at 4.2 s; a trim of -25.2 dB fits"},
 )
 
 
@@ -64,6 +92,7 @@ class FakeHost:
     def __init__(self) -> None:
         self.now = SNAPSHOT
         self.text = SHEET
+        self.seats = seats_of()
         self.gone = False
         self.closed = False
         self.acts: list[tuple[str, dict[str, object]]] = []
@@ -80,7 +109,11 @@ class FakeHost:
         self._reach()
         return self.now
 
-    def act(self, name: str, **arguments: object) -> Answer:
+    def levels(self) -> tuple[SeatLevel, ...]:
+        self._reach()
+        return self.seats
+
+    def act(self, name: str, /, **arguments: object) -> Answer:
         self._reach()
         ACTIONS[name].event(**arguments)  # only what the event has room for
         self.acts.append((name, arguments))
@@ -92,6 +125,10 @@ class FakeHost:
             self.now = replace(self.now, arming=True)
         if name == "confirm":
             self.now = replace(self.now, arming=False, output="OPEN")
+        if name == "clear":
+            self.now = replace(self.now, output="HUSHED", guard=GUARD)
+        if name == "vouch":
+            self.now = replace(self.now, unvouched=False, arming=False)
         if name in ("hold", "carry-on"):
             self.now = replace(self.now, holding=name == "hold")
         if name == "acknowledge":

@@ -4,14 +4,12 @@ from __future__ import annotations
 
 import asyncio
 import time
-from collections.abc import Awaitable, Callable
 from dataclasses import replace
 
 import pytest
-from rich.style import Style
+from desk.driving import LIT_SHARE, SIZES, key_at, lit_share, on_desk, strips, text_of, until
 from textual import events
 from textual.pilot import Pilot
-from textual.strip import Strip
 
 from beamctl.desk.app import DeskApp
 from beamctl.desk.courier import Courier
@@ -21,49 +19,6 @@ from beamctl.desk.theme import Form
 
 UNKNOWN = ["a", "z", "space", "escape", "tab", "shift+tab", "up", "pageup", "f5"]
 UNKNOWN += ["ctrl+p", "ctrl+z", "ctrl+j"]
-SIZES = [(80, 24), (120, 40)]
-LIT_FROM = 0.18  # relative luminance of a cell that counts as lit
-LIT_SHARE = 0.15
-
-
-def strips(app: DeskApp) -> list[Strip]:
-    """The screen as it stands, row by row."""
-    return app.screen._compositor.render_strips()
-
-
-def text_of(app: DeskApp) -> str:
-    return "\n".join(strip.text for strip in strips(app))
-
-
-async def until(pilot: Pilot, ready: Callable[[], object]) -> None:
-    """Wait for `ready`, at most five seconds."""
-    end_s = time.monotonic() + 5.0
-    while not ready():
-        assert time.monotonic() < end_s, text_of(pilot.app)
-        await pilot.pause(0.01)
-
-
-def on_desk(
-    host,
-    what: Callable[[Pilot], Awaitable[None]],
-    size: tuple[int, int] = (80, 24),
-    form: Form | None = None,
-) -> DeskApp:
-    """Run `what` on a desk that shows the host's picture."""
-    courier = Courier(host)
-    app = DeskApp(courier, form or Form(ascii=True))
-
-    async def main() -> None:
-        async with app.run_test(size=size) as pilot:
-            await until(pilot, lambda: "Night Tram" in text_of(app))
-            await what(pilot)
-
-    courier.start()
-    try:
-        asyncio.run(main())
-    finally:
-        courier.stop()
-    return app
 
 
 @pytest.mark.parametrize(
@@ -116,13 +71,6 @@ def test_arming_takes_two_keys(host) -> None:
 
     on_desk(host, what)
     assert [name for name, _ in host.acts] == ["ready", "confirm"]
-
-
-def key_at(key: str, at_s: float) -> events.Key:
-    """A press as the terminal's thread stamps it, however late the screen comes to handle it."""
-    event = events.Key(key, None)
-    event.time = at_s
-    return event
 
 
 def test_a_held_enter_is_one_go_and_the_next_press_another(host) -> None:
@@ -279,7 +227,7 @@ def test_help_keeps_hush_and_nothing_else(host) -> None:
 def test_big_readings_stand_on_the_screen_in_every_form(host, size, form: Form) -> None:
     async def what(pilot: Pilot) -> None:
         rows = [strip.text for strip in strips(pilot.app)]
-        for reading, top in (("12.5", 0), ("OPEN", 0), ("1:23", 6), ("-12.3", 6)):
+        for reading, top in (("12.5", 0), ("OPEN", 0), ("1:23", 6), ("NEAR 2.4", 6)):
             glyphs = draw(reading, form.dot)
             assert len(glyphs) >= 4
             assert all(g in row for g, row in zip(glyphs, rows[top:], strict=False)), reading
@@ -321,23 +269,6 @@ def test_states_differ_on_the_screen_with_all_colour_taken_away(host) -> None:
 
     host.now = replace(host.now, states={**host.now.states, "14": "done"})
     on_desk(host, what, (120, 40), Form("none", ascii=True))
-
-
-def lit_share(rows: list[Strip], cells: int) -> float:
-    """Share of the cells that hold a mark brighter than LIT_FROM; every ground must be black."""
-    lit = 0
-    for text, style, _ in (segment for strip in rows for segment in strip):
-        assert style.bgcolor.get_truecolor() == (0, 0, 0)
-        if text.strip() and luminance(style) > LIT_FROM:
-            lit += sum(sign != " " for sign in text)
-    return lit / cells
-
-
-def luminance(style: Style) -> float:
-    """Relative luminance of the foreground by WCAG 2."""
-    parts = [part / 255 for part in style.color.get_truecolor()]
-    linear = [p / 12.92 if p <= 0.04045 else ((p + 0.055) / 1.055) ** 2.4 for p in parts]
-    return 0.2126 * linear[0] + 0.7152 * linear[1] + 0.0722 * linear[2]
 
 
 BUSY = {"states": dict.fromkeys(("11", "12", "13", "14", "15A", "16"), "running")}

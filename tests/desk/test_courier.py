@@ -9,7 +9,7 @@ from threading import Event
 
 import pytest
 
-from beamctl.desk.courier import RETRY_S, TOO_LATE_S, Courier
+from beamctl.desk.courier import RETRY_S, TOO_LATE_S, Courier, Levels
 
 
 class Clock:
@@ -152,3 +152,23 @@ def test_stopping_sends_what_was_posted(host) -> None:
     courier.stop()
     assert host.acts == [("hush", {})]
     assert host.closed
+
+
+def test_brings_levels_when_asked_and_keeps_the_last(host, clock: Clock, courier: Courier) -> None:
+    courier.ask_picture()
+    until(lambda: courier.picture.snapshot)
+    assert courier.levels is None
+    clock.now_s = 104.0
+    courier.ask_levels()
+    until(lambda: courier.levels)
+    assert courier.levels == Levels(host.seats, 104.0)
+    host.gone = True
+    courier.ask_levels()
+    until(lambda: courier.picture.gone)
+    assert courier.levels == Levels(host.seats, 104.0)
+
+
+def test_an_argument_may_be_called_name(host, courier: Courier) -> None:
+    courier.post("vouch", name="Ann")
+    answer_of(courier)
+    assert host.acts == [("vouch", {"name": "Ann"})]

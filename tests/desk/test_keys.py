@@ -8,6 +8,7 @@ import pytest
 
 from beamctl.actions import ACTIONS
 from beamctl.desk import keys
+from beamctl.desk.app import PAGES
 from beamctl.desk.keyguard import PASTE_S, PasteGuard, RepeatGuard
 from beamctl.desk.keys import Ask, ask_for, name_of
 
@@ -23,7 +24,14 @@ def test_every_key_of_the_registry_is_bound_to_its_action(action) -> None:
 
 def test_the_desk_takes_no_key_from_the_registry() -> None:
     taken = {key for action in ACTIONS.values() for key in action.keys}
-    assert taken.isdisjoint(keys.HELP.keys + keys.LEAVE.keys)
+    own = [key for row in (keys.HELP, keys.LEAVE, *keys.SCREENS.values()) for key in row.keys]
+    assert taken.isdisjoint(own)
+    assert len(set(own)) == len(own)
+
+
+def test_every_screen_has_a_page_and_a_key_in_the_legend() -> None:
+    assert set(keys.SCREENS) == set(PAGES)
+    assert {("F2", "Desk"), ("F7", "Guard")} <= set(keys.legend())
 
 
 @pytest.mark.parametrize("key", ["space", "escape", "a", "tab", "ctrl+z", "ctrl+p", "ctrl+j", "up"])

@@ -160,7 +160,7 @@ def test_leaving_says_that_sound_goes_on(view: Make) -> None:
     assert "again within 3 s" in text
 
 
-@pytest.mark.parametrize(("width", "rows"), [(80, 2), (120, 1)])
+@pytest.mark.parametrize(("width", "rows"), [(80, 2), (120, 2)])
 def test_the_legend_names_every_action_that_has_a_key(width: int, rows: int) -> None:
     legend = legend_rows(width)
     assert len(legend) == rows
@@ -188,6 +188,7 @@ def test_every_key_and_mark_is_explained_in_80_by_24() -> None:
     text = "\n".join(text_of(row) for row in rows)
     assert "Leave:" in text
     assert "[!] barred" in text
+    assert "( ) CLEAR  (-) NEAR  (=) CAPPING  (X) TRIPPED  (?) BLIND" in text
     assert all(length(row) <= 80 for row in rows)
 
 

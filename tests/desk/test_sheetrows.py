@@ -126,3 +126,30 @@ def test_no_cues_and_no_standby(view: Make) -> None:
     empty = replace(MANY, cues=())
     assert len(sheet_rows(view({"sheet": empty}, standby=""), 80, 5)) == 5
     assert shown(view({"sheet": MANY}, standby="", newest="", states={}), 4) == [0, 1, 2, 3]
+
+
+WHY = (
+    "over its cap at stalls B4 by 3.2 dB (40 kHz band, 103.2 against 100) 4.2 s after GO; bell at "
+)
+WHY += "trim -25.2 dB fits"
+
+
+@pytest.mark.parametrize("height", [5, 8, 20])
+def test_why_a_cue_is_barred_stands_in_full_below_it_while_it_stands_by(
+    view: Make, height: int
+) -> None:
+    rows = sheet_rows(view(standby="13", barred={"13": WHY}), 80, height)
+    texts = ["".join(span.text for span in row) for row in rows]
+    at = next(n for n, text in enumerate(texts) if text.startswith("[!] 13"))
+    assert " ".join(" ".join(texts[at + 1 : at + 3]).split()) == WHY
+    assert len(rows) == height
+
+
+def test_why_other_cues_are_barred_stands_below_them_where_there_is_room(view: Make) -> None:
+    seen = view(barred={"13": "short why"})
+    roomy = ["".join(span.text for span in row).strip() for row in sheet_rows(seen, 80, 14)]
+    assert roomy[roomy.index("short why") - 1].startswith("[!] 13")
+    tight = ["".join(span.text for span in row).strip() for row in sheet_rows(seen, 80, 5)]
+    assert "short why" not in tight
+    running = view(states={"13": "running"}, barred={"13": "short why"})
+    assert "short why" not in str(sheet_rows(running, 80, 14))

@@ -1,4 +1,4 @@
-"""Takes the README's picture of the desk from the running program: `python tests/pictures/take.py`.
+"""Takes the README's pictures from the running program: `python tests/pictures/take.py`.
 
 A real host plays the shipped show on the null sink; the desk looks on without a terminal.
 """
@@ -21,6 +21,9 @@ from beamctl.host.link import Link
 HERE = Path(__file__).parent
 SHOW = HERE.parents[1] / "scenes" / "night-tram"
 CUES = ("1", "2", "3")
+SIZE = (110, 34)
+SCREENS = {"desk": "f2", "guard": "f7"}  # file → key of the screen that it shows
+SETTLES_S = 1.5  # until a screen has its levels
 
 
 def play(link: Link) -> None:
@@ -40,29 +43,33 @@ def play(link: Link) -> None:
         time.sleep(1.2)
 
 
-async def picture(link: Link, size: tuple[int, int]) -> str:
-    """The desk as SVG."""
+async def pictures(link: Link) -> dict[str, str]:
+    """Every screen as SVG, by the name of its file."""
     courier = Courier(link, time.monotonic)
     courier.start()
+    taken = {}
     try:
         app = DeskApp(courier, choose_form(plain=False, environ={"TERM": "xterm-256color"}))
-        async with app.run_test(size=size) as pilot:
-            await pilot.pause(1.0)
-            return app.export_screenshot(title="beamctl desk scenes/night-tram")
+        async with app.run_test(size=SIZE) as pilot:
+            for name, key in SCREENS.items():
+                await pilot.press(key)
+                await pilot.pause(SETTLES_S)
+                taken[name] = app.export_screenshot(title="beamctl desk scenes/night-tram")
     finally:
         courier.stop()
+    return taken
 
 
 def main() -> None:
-    """Play, and write desk.svg."""
+    """Play, and write desk.svg and guard.svg."""
     with tempfile.TemporaryDirectory() as folder:
         environ["BEAMCTL_RUNTIME"] = environ["BEAMCTL_STATE"] = folder
         host = subprocess.Popen([sys.executable, "-m", "beamctl", "host", str(SHOW)])
         try:
             link = Link(SHOW)
             play(link)
-            svg = asyncio.run(picture(link, (110, 34)))
-            (HERE / "desk.svg").write_text(svg, encoding="utf-8")
+            for name, svg in asyncio.run(pictures(link)).items():
+                (HERE / f"{name}.svg").write_text(svg, encoding="utf-8")
             Link(SHOW).stop_host()
             host.wait(20.0)
         finally:

@@ -32,6 +32,16 @@ def grid(columns: int = 8, rows: int = 8, pitch_m: float = 0.01, loom: str = "ea
     return maps.cell_map(at, maps.loom(at, loom))
 
 
+ROW = {  # far off, so that a show that is not about seats has some
+    "class": "seats",
+    "first_m": [0.0, 30.0, 1.2],
+    "rows": ["Z"],
+    "row_step_m": [0.0, 1.0, 0.0],
+    "seats": 2,
+    "seat_step_m": [0.5, 0.0, 0.0],
+}
+
+
 def make_show(
     beams: tuple[str, ...] = ("a",),
     cues: list[dict[str, Any]] | None = None,
@@ -56,7 +66,7 @@ def make_show(
         folder="",
         sheet=sheet,
         rig=rig,
-        house=House.model_validate({"format": 1} | (house or {})),
+        house=House.model_validate({"format": 1, "block": {"row": ROW}} | (house or {})),
         guard=Guard(format=1),
         wire=Wire(format=1),
         cells={"p": cells if cells is not None else grid()},

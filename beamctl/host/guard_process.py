@@ -1,0 +1,227 @@
+"""The guard's process: reads what enters the ring, grants what may leave, and says how it stands.
+
+It shares nothing with the engine but the outlet's memory, and with the host only a line. Time goes
+by samples; the wall clock is only watched for jumps, since the evening's record is timed by it. Any
+error ends the process: without it no lease is renewed, and the gate shuts.
+
+From the host:  {"attach": path}, {"clear": true}, {"stop": true}
+To the host:    {"progress": [what, done, of]}, {"barred": {cue: why}}, {"ready": true},
+                {"reading": {...}} and {"levels": [...]} several times a second, {"dose": [...]}
+                every second, {"trip": reason}, {"blind": reason} before it ends
+"""
+
+from __future__ import annotations
+
+import contextlib
+import gc
+import json
+import queue
+import sys
+import threading
+import time
+from multiprocessing.connection import Connection
+from pathlib import Path
+from typing import Any, NamedTuple
+
+import numpy as np
+
+from beamctl.engine import layout as at
+from beamctl.engine.outlet import Outlet
+from beamctl.errors import BeamctlError
+from beamctl.files.reader import load_show
+from beamctl.guard.watch import Watch
+from beamctl.host.barring import barred, cue_levels
+from beamctl.host.priority import GUARD_PRIORITY, ask_for_real_time, be_ordinary
+from beamctl.host.quiet import send_native_chatter_to
+from beamctl.show.standing import GUARDED
+
+LEASE_S = 0.15
+POLL_S = 0.0015
+CLOCK_JUMP_S = 2.0
+READING_S, LEVELS_S, DOSE_S = 0.05, 0.2, 1.0
+
+
+class GuardTask(NamedTuple):
+    """What one guard process is to do."""
+
+    folder: str
+    seal: str  # of guard, rig and house as the host read them
+    dose: list[list[float]]  # what an earlier guard of this evening had counted, or []
+    check: bool  # look through every cue first
+    log: str
+
+
+def guard_main(connection: Connection, task: GuardTask) -> None:
+    """Entry point of the process; returns when the host said stop, or went away."""
+    send_native_chatter_to(Path(task.log))
+    sys.setswitchinterval(0.0005)
+    be_ordinary()  # working out the field is in nobody's way
+    try:
+        Guard(connection, task).run()
+    except BeamctlError as error:
+        _tell(connection, {"blind": error.what})
+    except (EOFError, OSError):
+        pass
+    except BaseException as error:
+        _tell(connection, {"blind": f"{type(error).__name__}: {error}".rstrip(": ")})
+        raise
+
+
+def _tell(connection: Connection, message: dict[str, Any]) -> None:
+    with contextlib.suppress(OSError):
+        connection.send_bytes(json.dumps(message).encode())
+
+
+class Guard:
+    """One watch over one outlet at a time."""
+
+    def __init__(self, connection: Connection, task: GuardTask) -> None:
+        self._connection = connection
+        self._inbox: queue.SimpleQueue[dict[str, Any]] = queue.SimpleQueue()
+        self._due = dict.fromkeys(("progress", "reading", "levels", "dose"), 0.0)
+        show = load_show(Path(task.folder))
+        if show.seal != task.seal:
+            raise BeamctlError(
+                "guard, rig or house changed on disk since the host started",
+                "end the host and start it again to take the change",
+            )
+        if task.check:
+            found = barred(cue_levels(show, self._progress))
+            _tell(connection, {"barred": found})
+        self._rate_hz = show.rig.rate_hz
+        ring_s = (show.rig.ring_ms or 32.0) / 1000.0
+        self._watch = Watch(show, round(ring_s * self._rate_hz))
+        if task.dose:
+            self._watch.dose.carry_on(np.array(task.dose))
+        self._outlet: Outlet | None = None
+        self._taken = self._left = 0
+        self._granted: list[float] | None = None
+        self._trip = ""
+        self._clock_s = time.time() - time.monotonic()
+        ask_for_real_time(GUARD_PRIORITY)
+        gc.collect()
+        gc.freeze()
+        gc.disable()
+
+    def run(self) -> None:
+        """Watch until told to stop."""
+        threading.Thread(target=self._listen, daemon=True).start()
+        _tell(self._connection, {"ready": True})
+        while self._take_messages():
+            if self._outlet is not None:
+                self._follow(self._outlet)
+                self._grant(self._outlet)
+            self._watch_clock()
+            self._say()
+            time.sleep(POLL_S)
+        if self._outlet is not None:
+            self._outlet.grant(0)
+
+    # -- the host --------------------------------------------------------------------------------
+
+    def _progress(self, what: str, done: int, of: int) -> None:
+        now = time.monotonic()
+        if now >= self._due["progress"]:
+            self._due["progress"] = now + READING_S
+            _tell(self._connection, {"progress": [what, done, of]})
+
+    def _listen(self) -> None:
+        try:
+            while True:
+                self._inbox.put(json.loads(self._connection.recv_bytes()))
+        except (EOFError, OSError):
+            self._inbox.put({"stop": True})
+
+    def _take_messages(self) -> bool:
+        """Do what the host asked; False when it is time to stop."""
+        while True:
+            try:
+                message = self._inbox.get_nowait()
+            except queue.Empty:
+                return True
+            if "attach" in message:
+                self._attach(Outlet.attach(Path(message["attach"])))
+            elif message.get("clear"):
+                self._watch.clear()
+                self._trip = ""
+            elif message.get("stop"):
+                return False
+
+    def _attach(self, outlet: Outlet) -> None:
+        """Follow a stream from the next whole chunk on."""
+        self._outlet = outlet
+        self._granted = None
+        self._watch.begin()
+        self._taken = -(-outlet.count(at.READ) // at.CHUNK) * at.CHUNK
+        self._left = self._taken
+
+    # -- the stream ------------------------------------------------------------------------------
+
+    def _follow(self, outlet: Outlet) -> None:
+        """Read every step that is whole in the ring, and settle those that have left."""
+        step_n = self._watch.step_n
+        while outlet.count(at.WRITTEN) - self._taken >= step_n:
+            block = outlet.frames_at(self._taken, step_n)
+            if outlet.count(at.WRITTEN) - self._taken > outlet.frames:
+                self._attach(outlet)  # too late: it was written over meanwhile
+                return
+            self._granted = [float(c) for c in self._watch.take(block)]
+            self._taken += step_n
+            self._grant(outlet)
+        while self._taken - self._left >= step_n and outlet.count(at.READ) >= self._left + step_n:
+            self._watch.left(outlet.gains_left(self._left, step_n))
+            self._left += step_n
+
+    def _grant(self, outlet: Outlet) -> None:
+        """Renew the lease; not after a trip, and not before a step was read."""
+        if self._watch.trip or self._granted is None:
+            if outlet.count(at.LEASE_UNTIL):
+                outlet.grant(0)
+            return
+        until = outlet.count(at.READ) + round(LEASE_S * self._rate_hz)
+        same = self._granted == outlet.granted(outlet.count(at.GRANTS))
+        outlet.grant(until, None if same else self._granted)
+
+    def _watch_clock(self) -> None:
+        jumped_s = time.time() - time.monotonic() - self._clock_s
+        if abs(jumped_s) > CLOCK_JUMP_S:
+            self._clock_s += jumped_s
+            self._watch.trip = self._watch.trip or (
+                f"the clock jumped by {jumped_s:+.0f} s: the evening's record cannot be timed"
+            )
+
+    # -- what it says ----------------------------------------------------------------------------
+
+    def _say(self) -> None:
+        if self._watch.trip and not self._trip:
+            self._trip = self._watch.trip
+            _tell(self._connection, {"trip": self._trip})
+        now = time.monotonic()
+        for what, every_s in (("reading", READING_S), ("levels", LEVELS_S), ("dose", DOSE_S)):
+            if now >= self._due[what]:
+                self._due[what] = now + every_s
+                _tell(self._connection, {what: getattr(self, f"_{what}")()})
+
+    def _reading(self) -> dict[str, Any]:
+        """How it stands and what is held; see `snapshot.GuardView`."""
+        return {"state": self._watch.state, "held_db": self._watch.held_db()}
+
+    def _levels(self) -> list[list[float | None]]:
+        """Per listener: level, band, cap, dose and dose since doors."""
+        level_db, band, cap_db = self._watch.levels()
+        dose = self._watch.dose
+        return [
+            [
+                round(float(level), 2) if np.isfinite(level) else None,
+                GUARDED[int(b)].nominal_hz,
+                round(float(cap), 2),
+                round(float(percent), 3),
+                round(float(doors), 3),
+            ]
+            for level, b, cap, percent, doors in zip(
+                level_db, band, cap_db, dose.percent, dose.since_doors, strict=True
+            )
+        ]
+
+    def _dose(self) -> list[list[float]]:
+        return [[float(v) for v in row] for row in self._watch.dose.counted()]

@@ -1,0 +1,170 @@
+"""Keeps the guard process: starts it, tells it what to watch, and knows when it sees nothing.
+
+A dead guard is replaced at once, so that a trip can be cleared; three deaths within a minute stop
+that. One that stalls is ended after two seconds. Neither opens anything: the lease is gone by then.
+"""
+
+from __future__ import annotations
+
+import json
+import os
+import threading
+import time
+from collections import deque
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from multiprocessing import get_context
+from multiprocessing.connection import Connection
+from typing import Any
+
+from beamctl.host.guard_process import GuardTask, guard_main
+from beamctl.host.link import encode
+from beamctl.host.places import state_folder
+from beamctl.show.show import Show
+
+STALE_S = 0.2  # without a reading it is blind …
+STALLED_S = 2.0  # … and then it is ended
+DEATHS, DEATHS_S = 3, 60.0
+ONE_THREAD = ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS")
+
+Post = Callable[[dict[str, Any]], None]
+
+
+class Warden:
+    """The guard of one host; what it says, and that it went, is posted to the host's loop."""
+
+    def __init__(self, show: Show, post: Post) -> None:
+        self._show, self._post = show, post
+        self.reading: dict[str, Any] = {}
+        self.levels: list[list[Any]] = []
+        self._why = "starting"
+        self._read_at = time.monotonic()
+        self._ready = False
+        self._dose: list[list[float]] = []
+        self._outlet = ""
+        self._deaths: deque[float] = deque(maxlen=DEATHS)
+        self._process: Any = None
+        self._line: Connection | None = None
+        self._generation = 0
+
+    def start(self) -> None:
+        """Start a guard; it watches nothing before `attach`."""
+        context = get_context("spawn")
+        ours, theirs = context.Pipe()
+        log = str(state_folder() / "guard.log")
+        first = self._generation == 0
+        task = GuardTask(self._show.folder, self._show.seal, self._dose, first, log)
+        self._generation += 1
+        self._ready = False
+        self._process = context.Process(target=guard_main, args=(theirs, task), daemon=True)
+        with _one_thread():
+            self._process.start()
+        theirs.close()
+        self._line = ours
+        hear = threading.Thread(target=self._hear, args=(ours, self._generation), daemon=True)
+        hear.start()
+        if self._outlet:
+            self.attach(self._outlet)
+
+    def attach(self, outlet: str) -> None:
+        """Watch the stream whose memory is at `outlet`."""
+        self._outlet = outlet
+        self._send({"attach": outlet})
+
+    def clear(self) -> None:
+        """Its trip was cleared."""
+        self._send({"clear": True})
+
+    @property
+    def blind(self) -> str:
+        """Why it sees nothing now, "" while it does."""
+        if not self._ready:
+            return self._why
+        if time.monotonic() - self._read_at > STALE_S:
+            return "it stalls"
+        return ""
+
+    @property
+    def pid(self) -> int:
+        """Process number of the guard."""
+        return int(self._process.pid)
+
+    def hear(self, message: dict[str, Any]) -> str:
+        """Take a message in; returns why it tripped, when it says so now."""
+        if message["generation"] != self._generation:
+            return ""
+        if "ready" in message:
+            self._ready = True
+        elif "progress" in message:
+            what, done, of = message["progress"]
+            self._why = f"looking through the cues: {what}, {done} of {of}"
+        elif "levels" in message:
+            self.levels = message["levels"]
+        elif "dose" in message:
+            self._dose = message["dose"]
+        elif "reading" in message:
+            self.reading = message["reading"]
+        elif "blind" in message:
+            self._ready, self._why = False, message["blind"]
+        elif "gone" in message:
+            return self._gone()
+        self._read_at = time.monotonic()
+        return str(message.get("trip", ""))
+
+    def watch(self) -> None:
+        """End a guard that stalls."""
+        if self._ready and time.monotonic() - self._read_at > STALLED_S:
+            self._process.kill()
+
+    def end(self, wait_s: float) -> None:
+        """Let the guard end by itself, then make it."""
+        self._generation += 1
+        self._send({"stop": True})
+        if self._process is not None:
+            self._process.join(wait_s)
+            if self._process.is_alive():
+                self._process.kill()
+                self._process.join(wait_s)
+
+    # -- inside ----------------------------------------------------------------------------------
+
+    def _gone(self) -> str:
+        """The process ended: say why, and start another unless there were too many."""
+        if self._ready:
+            self._why = "the guard died"
+        why, self._ready = self._why, False
+        now = time.monotonic()
+        self._deaths.append(now)
+        if len(self._deaths) < DEATHS or now - self._deaths[0] > DEATHS_S:
+            self.start()
+            self._why = f"{why}; starting again"
+        return why
+
+    def _hear(self, line: Connection, generation: int) -> None:
+        try:
+            while True:
+                self._post(json.loads(line.recv_bytes()) | {"generation": generation})
+        except (EOFError, OSError):
+            self._post({"gone": True, "generation": generation})
+
+    def _send(self, message: dict[str, Any]) -> None:
+        try:
+            if self._line is not None:
+                self._line.send_bytes(encode(message))
+        except OSError:
+            return  # it is gone, and `hear` will be told
+
+
+@contextmanager
+def _one_thread() -> Iterator[None]:
+    """For a process started inside: its matrix products take one core, not all."""
+    before = {name: os.environ.get(name) for name in ONE_THREAD}
+    os.environ.update(dict.fromkeys(ONE_THREAD, "1"))
+    try:
+        yield
+    finally:
+        for name, value in before.items():
+            if value is None:
+                del os.environ[name]
+            else:
+                os.environ[name] = value
