@@ -50,7 +50,8 @@ ACTIONS: dict[str, Action] = {
             events.Ready,
             "Ready",
             ("asterisk", "kp_multiply"),
-            "First of two keys: * then Enter within 5 s arms from SHUT, restores from HUSHED.",
+            "First of two keys: * then Enter within 5 s arms from SHUT, restores from HUSHED; "
+            "after a trip they open a box for a typed word.",
         ),
         Action(
             "confirm",

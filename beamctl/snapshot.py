@@ -91,7 +91,7 @@ class GuardView:
     held_db: dict[str, float] = field(default_factory=dict)  # panel → dB it is held down by, > 0
     dose_pct: float = 0.0  # the most of any seat; 100 is its cap for the whole dose window
     dose_seat: str = ""
-    signed: str = ""  # "signed by NAME on DATE", or "UNSIGNED: why"
+    signed: str = ""  # "signed by NAME on DATE", or "UNSIGNED: why"; then the tables that hold
     margin_db: float = 0.0  # the most that any panel counts louder for want of a measurement
 
 

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import contextlib
 import sys
+from collections.abc import Callable
 from pathlib import Path
 
 import click
@@ -20,7 +22,7 @@ def desk(show: Path, sink: str, journal: Path | None, plain: bool) -> None:
     """Open the desk on SHOW; starts a host, or joins the one that runs this show.
 
     Leaving the desk never changes a sample. A host that this desk started ends with it, unless the
-    output is OPEN or HUSHED: then it runs on, and `beamctl desk` joins it again.
+    output is OPEN, HUSHED or TRIPPED: then it runs on, and `beamctl desk` joins it again.
     """
     from beamctl.commands.joining import HOST_STARTS_S, answers, said_by_host, start_host
     from beamctl.desk.app import run_desk
@@ -29,10 +31,10 @@ def desk(show: Path, sink: str, journal: Path | None, plain: bool) -> None:
     load_show(show)
     link = Link(show)
     host = None if answers(link) else start_host(show, sink, journal, link)
-    code = run_desk(link, plain)
+    code = run_desk(link, plain, _unread(show))
     if host is not None and answers(link):
         output = link.snapshot().output
-        if output in ("OPEN", "HUSHED"):
+        if output in ("OPEN", "HUSHED", "TRIPPED"):
             click.echo(f"The output is {output} and the host runs on.")
             click.echo(f"  beamctl desk {show}   joins it;   beamctl host {show} --stop   ends it")
         else:
@@ -42,3 +44,17 @@ def desk(show: Path, sink: str, journal: Path | None, plain: bool) -> None:
     if host is not None and host.poll() not in (None, 0):
         raise said_by_host(host.returncode)
     sys.exit(code)
+
+
+def _unread(show: Path) -> Callable[[], None] | None:
+    """What to do once the caution was read here for this show; None when it was before."""
+    from beamctl.host.places import show_key, state_folder
+
+    mark = state_folder() / "cautioned" / show_key(show)
+
+    def read() -> None:
+        with contextlib.suppress(OSError):
+            mark.parent.mkdir(exist_ok=True)
+            mark.touch()
+
+    return None if mark.exists() else read

@@ -59,13 +59,12 @@ class Chain:
         tap: Callable[[int, NDArray[np.float32]], None] | None = None,
     ) -> None:
         self._tap = tap
+        self.ramp_n = ramp_n(show)
         self.renderer = Renderer(show, sounds, start)
         self.channels = show.channels
         self._ahead = ahead
         frames = 2 * STEP + ahead
-        self.outlet = Outlet.create(
-            None, frames, show.channels, wires_of(show), ramp_n(show), start
-        )
+        self.outlet = Outlet.create(None, frames, show.channels, wires_of(show), self.ramp_n, start)
         self.outlet.grant(FOREVER, full_drives(show))
         self.outlet.host_lives(FOREVER)
         self.outlet.flow()

@@ -20,7 +20,7 @@ RELEASE_DB_S = 12.0  # how fast a panel that was held comes back
 RISE = 4.0  # the most that a pattern seen once may grow by before it is seen again
 MAJOR = 0.1  # of a seat's pressure: a panel below it is not held for what others do there
 TRACE = 0.01  # of a seat's pressure: a panel below it may grow regardless
-STEP_DB = 0.25  # ceilings go by these steps, downward, so that a still beam has a still ceiling
+STEP_DB = 0.25  # ceilings go by these steps, and up by two at least: a still beam has a still one
 
 
 class Ceilings:
@@ -34,6 +34,7 @@ class Ceilings:
         self._estimator = estimator
         self._most_drive = most_drive
         self.held = np.ones(len(most_drive))
+        self._given = np.zeros(len(most_drive))
         self._under_way: deque[Array] = deque(maxlen=steps_ahead)
 
     def next(self, step: Step, allowed: Array, step_s: float) -> Array:
@@ -44,9 +45,12 @@ class Ceilings:
         self.held = np.minimum(np.minimum(fits, released), 1.0)
         seen = step.drive * np.where(self.held < 1.0, self.held, np.minimum(fits, RISE))
         ceilings = np.maximum(seen, self._blind(step.amplitude, most))
-        self._under_way.append(np.where(fits < 1.0, step.drive * fits, np.inf))
+        self._under_way.append(np.where(fits < 1.0, step.drive * np.minimum(fits, 1.0), np.inf))
         ceilings = np.minimum(ceilings, np.min(self._under_way, axis=0))
-        return _stepped(np.minimum(ceilings, self._most_drive))
+        wanted = _stepped(np.minimum(ceilings, self._most_drive))
+        rises = wanted > self._given * 10.0 ** (1.5 * STEP_DB / 20.0)
+        self._given = np.where(rises, wanted, np.minimum(wanted, self._given))
+        return self._given.copy()
 
     def _blind(self, amplitude: Array, most: Array) -> Array:
         """(panels,) drive that passes no cap in any pattern of a panel, the others as seen."""

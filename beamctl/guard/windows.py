@@ -37,8 +37,8 @@ class Windows:
 
     def mean(self) -> Array:
         """Mean over the averaging time, re cap; 0 before anything sounded."""
-        found: Array = self._newest(self._length) / self.averaging_s
-        return found
+        mean: Array = self._newest(self._length) / self.averaging_s
+        return mean
 
     def allowed(self) -> Array:
         """Mean square re cap that may go on from now without any window passing the cap.
@@ -58,8 +58,8 @@ class Windows:
             return np.zeros_like(self._total)
         newest = (self._steps - 1) // self._per_bucket
         first = max(0, newest - buckets + 1)
-        found: Array = self._total - self._marks[first % len(self._marks)]
-        return found
+        kept: Array = self._total - self._marks[first % len(self._marks)]
+        return kept
 
 
 class Dose:
@@ -77,7 +77,8 @@ class Dose:
     @property
     def percent(self) -> Array:
         """(L,) percent over the window."""
-        return 100.0 * self._windows.mean()
+        percent: Array = 100.0 * self._windows.mean()
+        return percent
 
     def counted(self) -> Array:
         """(2, L): percent over the window and since doors, for a guard that takes over."""

@@ -24,6 +24,7 @@ from pathlib import Path
 from typing import Any, NamedTuple
 
 import numpy as np
+from threadpoolctl import threadpool_limits
 
 from beamctl.engine import layout as at
 from beamctl.engine.outlet import Outlet
@@ -55,6 +56,7 @@ def guard_main(connection: Connection, task: GuardTask) -> None:
     """Entry point of the process; returns when the host said stop, or went away."""
     send_native_chatter_to(Path(task.log))
     sys.setswitchinterval(0.0005)
+    threadpool_limits(1)  # its matrix products are small, and the other cores are not its own
     be_ordinary()  # working out the field is in nobody's way
     try:
         Guard(connection, task).run()

@@ -78,6 +78,7 @@ class Guarding:
         most = max(seats, key=lambda s: s.dose_pct, default=None)
         caps = self._caps
         signed = f"signed by {caps.signed_by} on {caps.signed_on}"
+        tables = ", ".join(dict.fromkeys(name for names in caps.tables.values() for name in names))
         return GuardView(
             state=state,
             reason=reason,
@@ -89,7 +90,7 @@ class Guarding:
             held_db=dict(self._warden.reading.get("held_db", {})),
             dose_pct=0.0 if most is None else most.dose_pct,
             dose_seat="" if most is None else f"{most.block} {most.name}",
-            signed=signed if not caps.unsigned else f"UNSIGNED: {caps.unsigned}",
+            signed=f"{f'UNSIGNED: {caps.unsigned}' if caps.unsigned else signed}; {tables}",
             margin_db=max(caps.margin_db.values()),
         )
 

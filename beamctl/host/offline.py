@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 from collections import deque
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from concurrent.futures import Future, ThreadPoolExecutor
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -17,8 +17,9 @@ from beamctl.errors import ShowError
 from beamctl.files.reader import load_show
 from beamctl.host.journal import read_journal
 from beamctl.host.loading import Sounds, digests, prepare_sounds
+from beamctl.host.stepped import Stepped, ring_n
 from beamctl.host.warming import warm
-from beamctl.show.events import Confirm, Go, Ready
+from beamctl.show.events import Confirm, Go, Ready, Vouch
 from beamctl.show.player import Player
 from beamctl.show.records import Record
 from beamctl.show.show import Show
@@ -30,15 +31,27 @@ BLOCK = 4096
 BLOCKS_BEHIND = 8
 
 
-def play_through(show: Show, gos: Iterable[tuple[int, str]], until: int) -> Iterator[Record]:
+def play_through(
+    show: Show,
+    gos: Iterable[tuple[int, str]],
+    until: int,
+    barred: Mapping[str, str] | None = None,
+    vouched: str = "",
+) -> Iterator[Record]:
     """Records of a show with GOs (sample, cue) given in advance, armed at sample 0.
 
-    The output is open from the first sample on; ShowError when a GO is refused.
+    The output is open from the first sample on; ShowError when a GO is refused: of a cue that is
+    `barred`, or in a house without seats that nobody has `vouched` for.
     """
-    player = Player(show)
+    player = Player(show, barred=barred or {})
     yield from player.sink("sink-open", 0)
+    if vouched:
+        yield from player.handle(Vouch("render", vouched), 0)
     yield from player.handle(Ready("render"), 0)
-    yield from player.handle(Confirm("render"), 0)
+    for record in player.handle(Confirm("render"), 0):
+        if record.what == "refused":
+            raise ShowError(str(record.args["text"]), "name who answers for it: --vouch NAME")
+        yield record
     for sample, ref in sorted(gos):
         yield from player.advance(sample)
         for record in player.handle(Go("render", ref), sample):
@@ -52,14 +65,22 @@ def play_through(show: Show, gos: Iterable[tuple[int, str]], until: int) -> Iter
 
 
 def render(
-    show: Show, records: Iterable[Record], samples: int, write: Write, progress: Progress
+    show: Show,
+    records: Iterable[Record],
+    samples: int,
+    write: Write,
+    progress: Progress,
+    guard: Stepped | None = None,
 ) -> str:
-    """Render `samples` of every channel through `write`; returns the SHA-256 of all of it."""
+    """Render `samples` of every channel through `write`; returns the SHA-256 of all of it.
+
+    With a guard in step the file holds what would have left, without one what was asked for.
+    """
     sounds = prepare_sounds(show, progress)
     progress("compiled code", 0, 1)
     warm(show)
     stream = Stream(0, list(records))
-    return _play(show, sounds, stream, samples, write, progress)
+    return _play(show, sounds, stream, samples, write, progress, guard=guard)
 
 
 @dataclass(slots=True)
@@ -161,9 +182,14 @@ def _play(
     write: Write,
     progress: Progress,
     tap: Callable[[int, NDArray[np.float32]], None] | None = None,
+    guard: Stepped | None = None,
 ) -> str:
     """Render a stream up to frame `until`; one thread renders, the other writes a little behind."""
-    chain = Chain(show, sounds, stream.start, tap=tap)
+    if guard is None:
+        chain = Chain(show, sounds, stream.start, tap=tap)
+    else:
+        chain = Chain(show, sounds, stream.start, ring_n(show), guard.tap)
+        guard.watch_over(chain)
     for record in stream.records:
         chain.put(record)
     digest = hashlib.sha256()
@@ -177,6 +203,8 @@ def _play(
         while chain.position < until:
             block = np.zeros((min(BLOCK, until - chain.position), show.channels), np.float32)
             chain.render(block)
+            if guard is not None:
+                guard.settle()
             waiting.append(keeper.submit(keep, block))
             if len(waiting) > BLOCKS_BEHIND:
                 waiting.popleft().result()

@@ -7,12 +7,10 @@ that. One that stalls is ended after two seconds. Neither opens anything: the le
 from __future__ import annotations
 
 import json
-import os
 import threading
 import time
 from collections import deque
-from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from collections.abc import Callable
 from multiprocessing import get_context
 from multiprocessing.connection import Connection
 from typing import Any
@@ -25,7 +23,6 @@ from beamctl.show.show import Show
 STALE_S = 0.2  # without a reading it is blind …
 STALLED_S = 2.0  # … and then it is ended
 DEATHS, DEATHS_S = 3, 60.0
-ONE_THREAD = ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS")
 
 Post = Callable[[dict[str, Any]], None]
 
@@ -57,8 +54,7 @@ class Warden:
         self._generation += 1
         self._ready = False
         self._process = context.Process(target=guard_main, args=(theirs, task), daemon=True)
-        with _one_thread():
-            self._process.start()
+        self._process.start()
         theirs.close()
         self._line = ours
         hear = threading.Thread(target=self._hear, args=(ours, self._generation), daemon=True)
@@ -153,18 +149,3 @@ class Warden:
                 self._line.send_bytes(encode(message))
         except OSError:
             return  # it is gone, and `hear` will be told
-
-
-@contextmanager
-def _one_thread() -> Iterator[None]:
-    """For a process started inside: its matrix products take one core, not all."""
-    before = {name: os.environ.get(name) for name in ONE_THREAD}
-    os.environ.update(dict.fromkeys(ONE_THREAD, "1"))
-    try:
-        yield
-    finally:
-        for name, value in before.items():
-            if value is None:
-                del os.environ[name]
-            else:
-                os.environ[name] = value

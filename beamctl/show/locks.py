@@ -25,13 +25,13 @@ class Locks:
         """True for a house without seats that nobody has answered for."""
         return not self.seats and not self.vouched
 
-    def refusal(self) -> Refusal | None:
-        """Why nothing may open now."""
+    def refusal(self, opening: bool = True) -> Refusal | None:
+        """Why nothing may open now, or be made ready to: somebody may still answer before it is."""
         if self.tripped:
             return "tripped", f"tripped: {self.tripped}; type {CLEAR_WORD} first"
         if self.blind:
             return "not-armed", f"the guard is blind: {self.blind}"
-        if self.unvouched:
+        if opening and self.unvouched:
             what = "no seat is declared, so nothing can be measured: somebody must answer for it"
             return "not-armed", what
         return None

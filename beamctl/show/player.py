@@ -223,7 +223,7 @@ class Player:
         if self.output not in ("SHUT", "HUSHED"):
             why = f"nothing to arm or restore while {self.output}"
             return self._refuse(event, sample, refusal(self.output), why)
-        if refused := self.locks.refusal():
+        if refused := self.locks.refusal(opening=False):
             return self._refuse(event, sample, *refused)
         self.ready_until = sample + round(READY_S * self.rate_hz)
         return [Record(sample, "ready", who=event.who)]
@@ -263,6 +263,7 @@ class Player:
     def _vouch(self, event: events.Vouch, sample: int) -> list[Record]:
         if refused := self.locks.vouch(event.name):
             return self._refuse(event, sample, *refused)
+        self.ready_until = -1
         return [Record(sample, "vouch", who=event.who, args={"name": self.locks.vouched})]
 
     def _hush(self, event: events.Hush, sample: int) -> list[Record]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import ctypes
+import contextlib
 import inspect
 import re
 import subprocess
@@ -179,7 +180,8 @@ def test_two_processes_share_it_without_losing_or_repeating_a_frame(tmp_path: Pa
     rng = np.random.default_rng(5)
     sizes = rng.integers(1, 1_025, 1_000).tolist()
     command = [sys.executable, "-c", PUSHER, str(path), str(SHARED_FRAMES)]
-    with subprocess.Popen(command) as pusher:
+    with subprocess.Popen(command) as pusher, contextlib.ExitStack() as whatever_comes:
+        whatever_comes.callback(pusher.kill)
         read = pulls = 0
         deadline = time.monotonic() + 120.0
         while read < SHARED_FRAMES and time.monotonic() < deadline:

@@ -96,7 +96,7 @@ def test_a_ceiling_comes_down_and_goes_up_by_a_glide() -> None:
 
 
 def test_a_long_note_held_at_its_ceiling_does_not_pump() -> None:
-    """Modulated at 1 kHz and depth 0.9, its envelope keeps its shape: the gain moves under 0.2 dB."""
+    """Modulated at 1 kHz and depth 0.9 its envelope keeps its shape: the gain stays in 0.2 dB."""
     tape = tone(192_000, 0.6, 0.9)
     out = play(tape, 0.3 * drive(tape))
     loud = np.abs(tape[96_000:, 0]) > 0.05

@@ -10,7 +10,7 @@ import pytest
 from support.playing import LATER, at, cue, loop, one_shot, player
 from support.rigs import make_show
 
-from beamctl.show import events, states
+from beamctl.show import events
 from beamctl.show.player import Player
 from beamctl.show.states import CUE, OUTPUT, CueState, Output
 

@@ -7,6 +7,8 @@ from pathlib import Path
 import numpy as np
 import soundfile
 
+from beamctl.files.signing import seal_of, sign
+
 RATE_HZ = 192_000
 FEEDS = 20
 FOLLOW_S = 0.4
@@ -78,7 +80,7 @@ over_s = 0.05
 
 CELL = """volts_at_full_scale = 5.0
 max_volts = 7.0
-level_db_30cm_10v = 115.0
+level_db_30cm_10v = 95.0
 cell_mm = 9.0
 resonance_hz = 40000.0
 q = 20.0
@@ -136,6 +138,7 @@ def write_show(folder: Path) -> Path:
         (folder / f"{name}.toml").write_text(text)
     (folder / "strip.csv").write_text(STRIP)
     _write_sounds(folder / "sounds")
+    sign(folder, "a test", "2026-01-01", seal_of(folder))
     return folder
 
 
@@ -170,6 +173,7 @@ grid = {{ columns = 8, rows = 8, pitch_mm = 10.0 }}
     (folder / "guard.toml").write_text(GUARD)
     at_s = np.arange(8 * 48_000) / 48_000
     soundfile.write(folder / "sounds/steady.wav", 0.5 * np.sin(2 * np.pi * tone_hz * at_s), 48_000)
+    sign(folder, "a test", "2026-01-01", seal_of(folder))
     return folder
 
 
