@@ -52,7 +52,7 @@ def frame_of(samples: NDArray[np.float32]) -> NDArray[np.int64]:
 def open_gate(frames: int, channels: int) -> Outlet:
     """An outlet that lets everything through, by a ramp of one frame: a frame is whole or zero."""
     outlet = Outlet.create(None, frames, channels, [Wire(0, channels, 1.0)], ramp_n=1)
-    outlet.grant(FOREVER, [1.0])
+    outlet.grant(FOREVER, [1e6])
     outlet.host_lives(1 << 62)
     outlet.ask_open(1)
     return outlet

@@ -52,7 +52,7 @@ class Field:
         self._feeds = {name: cells.feeds for name, cells in show.cells.items()}
         self._air = air or Air(**show.house.air.model_dump())
         self._paths: dict[str, list[Path]] = {}
-        self._matrices: dict[tuple[str, float], list[NDArray[np.complex64]]] = {}
+        self._matrices: dict[tuple[str, float], NDArray[np.complex64]] = {}
         self._most: dict[tuple[str, float], Array] = {}
         self._bounds: dict[tuple[str, Band], NDArray[np.float32]] = {}
         for name, panel in show.rig.panel.items():
@@ -64,7 +64,7 @@ class Field:
                 edges = surface.corner_m, surface.along_m, surface.up_m
                 mirrored = image(emitters, *edges, surface.reflection)
                 paths.append(self._path(mirrored, width, surface))
-            self._paths[name] = [path for path in paths if len(path.who)]
+            self._paths[name] = paths
 
     def power_pa2(
         self, panel: str, frequency_hz: float, vectors: Phasors | NDArray[np.complex64]
@@ -76,13 +76,9 @@ class Field:
         """
         feeds, sets, count = vectors.shape
         flat = vectors.reshape(feeds, sets * count).astype(np.complex64, copy=False)
-        total = np.zeros((len(self.listeners), sets))
-        for path, matrix in zip(self._paths[panel], self._matrix(panel, frequency_hz), strict=True):
-            pressure = matrix @ flat
-            square = pressure.real**2 + pressure.imag**2
-            power = square.reshape(len(matrix), sets, count).sum(axis=-1)
-            total[path.who] += np.sqrt(np.maximum.reduceat(power, path.starts, axis=0))
-        return total**2
+        pressure = flat.T @ self._matrix(panel, frequency_hz)
+        square = pressure.real**2 + pressure.imag**2
+        return self._heard(panel, square.reshape(sets, count, -1).sum(axis=1))
 
     def most_pa2(self, panel: str, frequency_hz: float) -> Array:
         """Mean square pressure (L,) that no pattern of unit drive passes, whatever its phases.
@@ -91,11 +87,9 @@ class Field:
         """
         key = panel, frequency_hz
         if key not in self._most:
-            total = np.zeros(len(self.listeners))
-            for path, matrix in zip(self._paths[panel], self._matrix(*key), strict=True):
-                power = np.sum(matrix.real.astype(np.float64) ** 2 + matrix.imag**2, axis=1)
-                total[path.who] += np.sqrt(np.maximum.reduceat(power, path.starts))
-            self._most[key] = total**2
+            matrix = self._matrix(*key)
+            power = np.sum(matrix.real**2 + matrix.imag**2, axis=0)
+            self._most[key] = self._heard(panel, power[np.newaxis])[:, 0]
         return self._most[key]
 
     def bound_pa2(self, panel: str, band: Band, rms: Array) -> Array:
@@ -103,7 +97,7 @@ class Field:
 
         Re full-scale sines. Every feed counts with the loudest of the band's edges and middle.
         """
-        return np.asarray((self._bound(panel, band) @ rms) ** 2, dtype=np.float64)
+        return np.asarray((self._bound(panel, band) @ rms.astype(np.float32)) ** 2, np.float64)
 
     # -- inside ----------------------------------------------------------------------------------
 
@@ -130,18 +124,27 @@ class Field:
             np.array(who, np.int64),
         )
 
-    def _matrix(self, panel: str, frequency_hz: float) -> list[NDArray[np.complex64]]:
-        """Pressure per feed phasor (R, F) of every path, complex64."""
+    def _matrix(self, panel: str, frequency_hz: float) -> NDArray[np.complex64]:
+        """Pressure per feed phasor (F, R) at the places of all paths, one path after the other."""
         key = panel, frequency_hz
         if key not in self._matrices:
-            self._matrices[key] = [
-                (
-                    transfer(path.places_m, path.emitters, self._air, frequency_hz)
-                    * path.rise[:, np.newaxis]
-                ).astype(np.complex64)
+            lots = [
+                (transfer(path.places_m, path.emitters, self._air, frequency_hz).T * path.rise)
                 for path in self._paths[panel]
             ]
+            self._matrices[key] = np.concatenate(lots, axis=1, dtype=np.complex64)
         return self._matrices[key]
+
+    def _heard(self, panel: str, power: NDArray[np.float32]) -> Array:
+        """Mean squares (L, S) of those (S, R) at places: worst in a head, paths by magnitude."""
+        total = np.zeros((len(self.listeners), len(power)))
+        row = 0
+        for path in self._paths[panel]:
+            there = power[:, row : row + len(path.places_m)]
+            worst = np.maximum.reduceat(there, path.starts, axis=1)
+            total[path.who] += np.sqrt(worst, dtype=np.float64).T
+            row += len(path.places_m)
+        return total**2
 
     def _bound(self, panel: str, band: Band) -> NDArray[np.float32]:
         key = panel, band

@@ -12,6 +12,7 @@ from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.fft import rfft  # several times as fast as NumPy's in single precision
 
 from beamctl.acoustics.exposure import Band, band_at
 from beamctl.show.standing import GUARDED
@@ -66,8 +67,8 @@ class Analyser:
     def __init__(self, rate_hz: int, feeds: int, carrier_hz: float, crossing_s: float) -> None:
         """`crossing_s`: how long sound takes across the panel."""
         self._n = frame_length(rate_hz)
-        self._window = np.sin(np.pi * (np.arange(self._n) + 0.5) / self._n).astype(np.float32)
-        self._scale = np.float32(2.0 * np.sqrt(2.0) / self._n)
+        sine = np.sin(np.pi * (np.arange(self._n) + 0.5) / self._n)
+        self._window = (2.0 * np.sqrt(2.0) / self._n * sine).astype(np.float32)
         self._tail = np.zeros((feeds, self._n // 2), np.float32)
         hz = np.arange(self._n // 2 + 1, dtype=np.float64) * float(rate_hz / self._n)
         home = band_at(carrier_hz)
@@ -90,22 +91,21 @@ class Analyser:
         half = self._n // 2
         signal = np.concatenate((self._tail, block.T), axis=1)
         self._tail = signal[:, -half:].copy()
-        count = signal.shape[1] // half - 1
-        frames = np.stack([signal[:, k * half : k * half + self._n] for k in range(count)], axis=1)
-        scale = np.float32(self._scale / np.sqrt(count))
-        bins: Vectors = np.fft.rfft(frames * self._window, axis=2).astype(np.complex64) * scale
-        power = bins.real**2 + bins.imag**2
-        by_bin = power.sum(axis=(0, 1), dtype=np.float64)
+        frames = np.lib.stride_tricks.sliding_window_view(signal, self._n, axis=1)[:, ::half]
+        window = self._window * np.float32(1.0 / np.sqrt(frames.shape[1]))
+        bins: Vectors = rfft(frames * window, axis=2, overwrite_x=True)
+        power = np.sum(bins.real**2 + bins.imag**2, axis=1)
+        by_bin = power.sum(axis=0, dtype=np.float64)
         parts, rest = self._parts(bins, by_bin)
         return Spectrum(
             parts=parts,
             rest=rest,
             bands={
-                band: power[:, :, low:high].sum(axis=(1, 2), dtype=np.float64)
+                band: power[:, low:high].sum(axis=1, dtype=np.float64)
                 for band, (low, high) in self._bands.items()
                 if by_bin[low:high].sum() > 0.0
             },
-            drive=float(np.sqrt(np.sum(np.square(block, dtype=np.float64)) / len(block))),
+            drive=float(np.linalg.norm(signal[:, half:]) / np.sqrt(len(block))),
             carrier=float(by_bin[slice(*self._home)].sum()),
             audible=float(by_bin[: self._audible].sum()),
         )

@@ -50,7 +50,8 @@ class Windows:
         for share in SHARES:
             held = self._newest(round((1.0 - share) * self._length)) / self.averaging_s
             np.minimum(most, (UNDER - held) / share, out=most)
-        return np.maximum(most, 0.0)
+        allowed: Array = np.maximum(most, 0.0)
+        return allowed
 
     def _newest(self, buckets: int) -> Array:
         """Seconds at the cap in the newest buckets, the one that is being filled among them."""

@@ -64,7 +64,7 @@ def test_one_hour_on_a_fast_device() -> None:
 
     fill()
     outlet.flow()
-    outlet.grant(1 << 62, [1.0])
+    outlet.grant(1 << 62, [1e6])
     outlet.host_lives(1 << 62)
     send(player.sink("sink-open", renderer.position))
     send(player.handle(Ready(), renderer.position))

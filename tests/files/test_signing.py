@@ -150,7 +150,7 @@ EDITS: dict[str, Callable[[Path], None]] = {
     "the seats' figure raised": _edit("guard.toml", "seats_db = 100", "seats_db = 110"),
     "another table": _edit("guard.toml", "acgih-ceiling", "sweden-1978"),
     "a longer average": _edit("guard.toml", "averaging_s = 5.0", "averaging_s = 60.0"),
-    "the level of the cells": lambda folder: _swap_last(folder, "rig.toml", "= 115.0", "= 110.0"),
+    "the level of the cells": lambda folder: _swap_last(folder, "rig.toml", "= 95.0", "= 93.0"),
     "a panel moved": _edit("rig.toml", "[0.5, 0.0, 3.0]", "[0.6, 0.0, 3.0]"),
     "a cell not dead": _edit("strip.csv", "0,0,1\n", "0,0,0\n"),
     "a comment of the guard": _edit("guard.toml", "# crew stand nearer", "# crew stand near"),
@@ -217,7 +217,7 @@ CLAIMS: dict[str, tuple[Callable[[Path], object], str]] = {
         'measures panel "strip"',
     ),
     "the panel changed": (
-        _edit("rig.toml", "level_db_30cm_10v = 115.0", "level_db_30cm_10v = 105.0"),
+        _edit("rig.toml", "level_db_30cm_10v = 95.0", "level_db_30cm_10v = 90.0"),
         'the panel was changed since; measure it again, or write measured = ""',
     ),
     "it did not pass": (
