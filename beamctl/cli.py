@@ -44,6 +44,12 @@ def main() -> None:
       beamctl desk scenes/night-tram
       beamctl render scenes/night-tram --go 1@0.5 --for 6 -o tram.wav
 
+    
+    Before a show:  inspect (what is barred), wirecheck (what hangs), sign (who allows it)
+    After it:       report (what the venue files), replay (the very samples again)
+
+    Ask first: local rules and qualified people decide what may sound in a room.
+
     Exit codes: 0 done, 1 warnings or a failed check, 2 errors in the show, 4 the machine,
     6 a sink that does not offer what the rig needs.
     """

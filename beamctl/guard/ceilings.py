@@ -20,7 +20,7 @@ RELEASE_DB_S = 12.0  # how fast a panel that was held comes back
 RISE = 4.0  # the most that a pattern seen once may grow by before it is seen again
 MAJOR = 0.1  # of a seat's pressure: a panel below it is not held for what others do there
 TRACE = 0.01  # of a seat's pressure: a panel below it may grow regardless
-STEP_DB = 0.25  # ceilings go by these steps, and up by two at least: a still beam has a still one
+STEP_DB = 0.05  # ceilings go by these steps, and up by two at least: a still beam has a still one
 
 
 class Ceilings:

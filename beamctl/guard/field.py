@@ -76,7 +76,7 @@ class Field:
         """
         feeds, sets, count = vectors.shape
         flat = vectors.reshape(feeds, sets * count).astype(np.complex64, copy=False)
-        pressure = flat.T @ self._matrix(panel, frequency_hz)
+        pressure = np.ascontiguousarray(flat.T) @ self._matrix(panel, frequency_hz)
         square = pressure.real**2 + pressure.imag**2
         return self._heard(panel, square.reshape(sets, count, -1).sum(axis=1))
 
@@ -129,10 +129,11 @@ class Field:
         key = panel, frequency_hz
         if key not in self._matrices:
             lots = [
-                (transfer(path.places_m, path.emitters, self._air, frequency_hz).T * path.rise)
+                transfer(path.places_m, path.emitters, self._air, frequency_hz).T * path.rise
                 for path in self._paths[panel]
             ]
-            self._matrices[key] = np.concatenate(lots, axis=1, dtype=np.complex64)
+            whole = np.concatenate(lots, axis=1, dtype=np.complex64)
+            self._matrices[key] = np.ascontiguousarray(whole)  # few vectors at many places
         return self._matrices[key]
 
     def _heard(self, panel: str, power: NDArray[np.float32]) -> Array:

@@ -12,9 +12,8 @@ from numpy.typing import NDArray
 Array = NDArray[np.float64]
 
 BUCKETS = 128
-SHARES = (1.0, 0.5, 0.25, 0.125, 0.0625, 0.03125)  # of the window, in which what follows must fit
-OVERSHOOT = 10.0**0.1  # the most that a moment may pass the cap by, within the average
-UNDER = 10.0**-0.01  # what is aimed at where the average is held: 0.1 dB under the cap
+SHARES = (0.5, 0.25, 0.125, 0.0625, 0.03125)  # of the window, in which what follows must fit
+OVERSHOOT = 2.0  # the most that a moment may have re cap, within the average: a full sideband more
 
 
 class Windows:
@@ -49,7 +48,7 @@ class Windows:
         most = np.full(self._total.shape, OVERSHOOT)
         for share in SHARES:
             held = self._newest(round((1.0 - share) * self._length)) / self.averaging_s
-            np.minimum(most, (UNDER - held) / share, out=most)
+            np.minimum(most, (1.0 - held) / share, out=most)
         allowed: Array = np.maximum(most, 0.0)
         return allowed
 

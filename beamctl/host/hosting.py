@@ -11,7 +11,7 @@ import time
 from collections import deque
 from collections.abc import Callable, Iterable
 from dataclasses import asdict
-from datetime import datetime
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
@@ -111,13 +111,13 @@ class Host:
             self._notice("engine stalled and was ended")
         self._trip(self._guarding.tick(self._now()))
         self._look_at_files()
+        self._count()
         if self._player.output in ("SHUT", "OPEN", "HUSHED", "TRIPPED"):
             self._live()
             self._tell_final_stage()
             if not self._batches.open:  # what hangs on a GO waits until its sample is certain
                 ahead = round(AHEAD_S * self.show.rig.rate_hz)
                 self._send(self._player.advance(self._now() + ahead))
-            self._count()
         elif (names := self._keeper.look()) is not None and self._sink not in names:
             self._notice(f"needed {self._sink}, offered {', '.join(names) or 'no device'}")
 
@@ -215,6 +215,7 @@ class Host:
         start = self._keeper.opened(ready)
         self._write([Record(start, "stream", args=ready)])
         self._warden.attach(str(self._keeper.outlet_path))
+        self._tell_time()
         self._send(self._player.sink("sink-open", self._stamp()))
 
     def _sink_lost(self, message: dict[str, Any]) -> None:
@@ -268,13 +269,19 @@ class Host:
         if self.journal.problem:
             self._notice(self.journal.problem)
 
+    def _tell_time(self) -> None:
+        """What time it is at the sample that is rendered next, for who reads the journal later."""
+        utc = datetime.now(UTC).isoformat(timespec="milliseconds")
+        self._write([Record(self._now(), "clock", args={"utc": utc})])
+
     def _count(self) -> None:
-        """Counters into the journal, every now and then while it may sound."""
+        """Time into the journal every now and then, and counters while it may sound."""
         now = time.monotonic()
         outlet = self._keeper.outlet
-        if outlet is not None and now - self._counted_at > COUNTERS_S:
+        if now - self._counted_at > COUNTERS_S:
             self._counted_at = now
-            if self._player.output == "OPEN":
+            self._tell_time()
+            if outlet is not None and self._player.output == "OPEN":
                 args = counters.of(outlet, self._keeper.status, self._drift)
                 self._write([Record(self._now(), "counters", args=args)])
 

@@ -1,6 +1,6 @@
 """The journal: one line per record, appended as it happens, readable up to the last whole line.
 
-The first line says what was played: show folder, digests of its files, versions. The rest are the
+The first line says what was played: show, cues, digests of its files, versions. The rest are the
 records exactly as the engine took them. `left` closes it: how many samples went to the sink, and
 their SHA-256, which `replay` must reproduce.
 """
@@ -43,7 +43,9 @@ class Journal:
             "beamctl": __version__,
             "journal": LAYOUT,
             "began": datetime.now(UTC).isoformat(timespec="milliseconds"),
+            "title": show.sheet.title,
             "folder": show.folder,
+            "cues": {cue.ref: cue.title for cue in show.sheet.cue},
             "digests": digests(show),
             "rate_hz": show.rig.rate_hz,
             "channels": show.channels,

@@ -32,7 +32,7 @@ CAP_DB = 78.0  # so low that ten times the drive of a show at its cap is still b
 COLUMNS, ROWS, PITCH_M, CELL_M = 8, 2, 0.007, 0.006
 FEEDS = COLUMNS * ROWS
 AIR_CELSIUS, AIR_PCT = 20.0, 50.0
-FAR_M, NEAR_M = (1.1, 4.9, -0.5), (-0.56, 2.2, -0.25)
+FAR_M, NEAR_M = (1.1, 4.9, -0.5), (-0.59, 2.33, -0.265)
 
 F32 = NDArray[np.float32]
 
