@@ -19,6 +19,7 @@ from beamctl.acoustics.air import Air, sound_speed_m_s
 from beamctl.show import events
 from beamctl.show.beamstate import MIN_GLIDE_S, BeamState
 from beamctl.show.locks import Locks
+from beamctl.show.once import Once
 from beamctl.show.plan import BeamPlan, swing_of
 from beamctl.show.records import Record
 from beamctl.show.run import Run
@@ -30,7 +31,6 @@ from beamctl.show.targets import Target, target_of
 
 READY_S = 5.0
 RESTORE_RISE_S = 0.25
-TOKENS_KEPT = 4096
 
 
 @dataclass
@@ -49,7 +49,7 @@ class Player:
     runs: dict[str, Run] = field(default_factory=dict)
     plans: dict[str, BeamPlan] = field(default_factory=dict)
     barred: Mapping[str, str] = field(default_factory=dict)  # cue → why
-    _tokens: dict[int, None] = field(default_factory=dict)
+    _once: Once = field(default_factory=Once)
 
     def __post_init__(self) -> None:
         self.rate_hz = self.show.rig.rate_hz
@@ -137,7 +137,7 @@ class Player:
 
     def _go(self, event: events.Go, sample: int) -> list[Record]:
         ref = event.ref or self.standby
-        if event.token and event.token in self._tokens:
+        if self._once.used(event.token):
             return self._refuse(event, sample, "repeat", f"token {event.token} was used")
         if (self.output, "go") not in OUTPUT:
             why = f"{self.output}: * then Enter opens the output"
@@ -152,10 +152,7 @@ class Player:
             return self._refuse(event, sample, "busy", "the show is held; carry on first")
         if (self.state(ref), "go") not in CUE:
             return self._refuse(event, sample, "busy", f"cue {ref} is {self.state(ref)}")
-        if event.token:
-            self._tokens[event.token] = None
-            if len(self._tokens) > TOKENS_KEPT:
-                del self._tokens[next(iter(self._tokens))]
+        self._once.take(event.token)
         records = self._fire(ref, sample, event.who)
         if ref == self.standby or not self.standby:
             self._stand(after_go(self.show.sheet, ref, self.state))
