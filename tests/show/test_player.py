@@ -9,7 +9,8 @@ from support.playing import LATER, at, cue, loop, only, player, reason, whats
 from support.rigs import make_show
 
 from beamctl.show import events
-from beamctl.show.player import READY_S, TOKENS_KEPT, Player
+from beamctl.show.once import KEPT
+from beamctl.show.player import READY_S, Player
 from beamctl.show.records import Record
 
 # -- GO and stand-by ----------------------------------------------------------------------------
@@ -123,7 +124,7 @@ def test_a_token_fires_once_and_is_only_spent_by_a_go_that_was_done() -> None:
 
 def test_only_so_many_tokens_are_kept() -> None:
     p = player(cue("1"))
-    for token in range(1, TOKENS_KEPT + 2):
+    for token in range(1, KEPT + 2):
         assert only(p.handle(events.Go(ref="1", token=token), token * 10_000), "go")
     assert reason(p.handle(events.Go(ref="1", token=2), LATER)) == "repeat"
     assert only(p.handle(events.Go(ref="1", token=1), LATER), "go")
