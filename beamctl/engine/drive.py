@@ -2,8 +2,8 @@
 
 Drive is the root of the summed mean squares of a panel's feeds: over 64 chunks (21 ms at 192 kHz),
 or over 8 where that is more than 2 dB higher. It is taken in the ring, so that a rise is met before
-it leaves, and it falls slowly, so that what is held does not pump. A ceiling never jumps: it falls
-by 3 dB a chunk and rises by a hundredth of itself.
+it leaves. A ceiling never jumps: it falls by 3 dB a chunk and rises by a tenth of itself. A panel
+that was held for more than a moment comes back slowly, so that it does not pump.
 """
 
 from __future__ import annotations
@@ -17,9 +17,11 @@ from beamctl.engine.compiled import compiled
 
 MAGNITUDE = np.int32(0x7FFFFFFF)  # a float32's bits without its sign
 SHORT_SHARE = 10.0**-0.2  # of the power over the last SMOOTH chunks
-RELEASE = 0.9993  # of a drive that falls, per chunk: 6 dB in a third of a second at 192 kHz
+SETTLING = 0.01  # of the way to what a panel is held to, per chunk: a moment is 33 ms at 192 kHz
+RELEASE = 1.00044  # of the gain that a panel comes back by, per chunk: 11.5 dB in a second
+FROM_NOTHING = 1e-6  # and this
 FALL = 0.7  # of a ceiling that comes down, per chunk
-RISE = 0.01  # of the ceiling that it goes up to, per chunk
+RISE = 0.1  # of the ceiling that it goes up to, per chunk
 LEAST = 1e-9  # a drive below it is none
 
 
@@ -38,8 +40,7 @@ def measure(memory, panel, chunk, broken):
         if k < at.SMOOTH:
             short += value
     power = max(long / at.LONG, short / at.SMOOTH * SHORT_SHARE)
-    before = floats[_place(at.DRIVES, panel, chunk - 1)] if chunk > 0 else 0.0
-    floats[_place(at.DRIVES, panel, chunk)] = max(sqrt(power), before * RELEASE)
+    floats[_place(at.DRIVES, panel, chunk)] = sqrt(power)
 
 
 @compiled
@@ -74,30 +75,44 @@ def at_mark(memory, table, panel, chunk):
 
 @compiled
 def glide(memory, panel, chunk):
-    """Take the panel's ceiling on to the two marks that enclose `chunk`."""
+    """Take a panel's ceiling, and the gain it leaves, on to the marks that enclose `chunk`."""
     floats = memory.view(np.float64)
     goal = floats[at.TARGETS + panel]
     if not goal >= 0.0:  # what is not a number lets nothing out
         goal = 0.0
     row = at.GLIDES + 2 * panel
-    for _ in range(chunk - memory[at.GLIDED + panel]):
+    for mark in range(memory[at.GLIDED + panel] + 2, chunk + 2):
         here = floats[row + 1]
         floats[row] = here
         floats[row + 1] = (
             max(goal, here * FALL - LEAST) if goal < here else min(goal, here + RISE * goal)
         )
-        if floats[row] == goal and floats[row + 1] == goal:
-            break
+        drive = at_mark(memory, at.DRIVES, panel, mark + at.SMOOTH - 1)
+        _hold(floats, at.DOWNS + 3 * panel, _held(drive, floats[row + 1]))
     memory[at.GLIDED + panel] = max(chunk, memory[at.GLIDED + panel])
 
 
 @compiled
-def held_at_marks(memory, panel, chunk):
-    """Gains that hold the panel's drive under its ceiling at both ends of a chunk, 1 for none."""
-    row = memory[at.GLIDES + 2 * panel : at.GLIDES + 2 * panel + 2].view(np.float64)
-    before = at_mark(memory, at.DRIVES, panel, chunk + at.SMOOTH - 1)
-    after = at_mark(memory, at.DRIVES, panel, chunk + at.SMOOTH)
-    return _held(before, row[0]), _held(after, row[1])
+def _hold(floats, row, gain):
+    """Go on by one mark: the gain asked for, or less where a longer hold is still coming back.
+
+    The row: what the panel is held down by at the mark before, at this one, and for longer.
+    """
+    longer = 1.0 - floats[row + 2]
+    if gain < longer:
+        longer -= SETTLING * (longer - gain)
+    else:
+        longer = min(gain, longer * RELEASE + FROM_NOTHING)
+    floats[row] = floats[row + 1]
+    floats[row + 1] = 1.0 - min(gain, longer)
+    floats[row + 2] = 1.0 - longer
+
+
+@compiled
+def held_at_marks(memory, panel):
+    """Gains that the panel is held to at both marks, 1 for none."""
+    down = memory[at.DOWNS + 3 * panel : at.DOWNS + 3 * panel + 2].view(np.float64)
+    return 1.0 - down[0], 1.0 - down[1]
 
 
 @compiled

@@ -143,6 +143,7 @@ def _take_grant(memory, sample):
         if shut:
             memory[at.GLIDES + 2 * panel] = memory[row + panel]
             memory[at.GLIDES + 2 * panel + 1] = memory[row + panel]
+            memory[at.DOWNS + 3 * panel : at.DOWNS + 3 * panel + 3] = 0  # held down by nothing
     memory[at.SEEN_GRANT] = grants
     _log(memory, sample, at.GRANTED, grants)
 
@@ -279,7 +280,7 @@ def _finish_chunk(memory, out, panel, read, begin, n, limit):
     peak_before = at_mark(memory, at.DEMANDS, panel, chunk + at.SMOOTH - 1)
     peak_after = at_mark(memory, at.DEMANDS, panel, chunk + at.SMOOTH)
     high = max(peak_before, peak_after) > limit
-    before, after = held_at_marks(memory, panel, chunk)
+    before, after = held_at_marks(memory, panel)
     held = min(before, after) < 1.0
     limit_bits = float_bits(limit)
     sounded, squares = 0, 0.0

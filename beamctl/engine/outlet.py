@@ -83,7 +83,7 @@ class Outlet:
         memory[at.PANELS], memory[at.RAMP_N], memory[at.SIZE] = len(panels), ramp_n, size
         memory[at.WRITTEN], memory[at.READ], memory[at.SCANNED] = start, start, start // at.CHUNK
         memory[at.START] = start
-        memory[at.GLIDED : at.GLIDED + len(panels)] = start // at.CHUNK
+        memory[at.GLIDED : at.GLIDED + len(panels)] = start // at.CHUNK - 2  # neither mark is known
         for i, wire in enumerate(panels):
             memory[at.FIRSTS + i], memory[at.FEEDS + i] = wire.first, wire.feeds
             outlet._floats[at.RATINGS + i] = wire.rating
@@ -176,12 +176,20 @@ class Outlet:
         self.memory[at.HOST_UNTIL] = until
 
     def gains_left(self, first: int, count: int) -> NDArray[np.float64]:
-        """Rms gain (panels,) that frames first … first + count left with; both whole chunks."""
+        """Gain (panels,) that frames first … first + count left with; both whole chunks.
+
+        The root of the power that left over the power that came: what was loud counts for more.
+        """
         chunks = np.arange(first // at.CHUNK, (first + count) // at.CHUNK) % at.DEMANDS_KEPT
-        end = at.LEFT + self.count(at.PANELS) * at.DEMANDS_KEPT
-        squares = self._floats[at.LEFT : end].reshape(-1, at.DEMANDS_KEPT)[:, chunks]
-        found: NDArray[np.float64] = np.sqrt(squares.sum(axis=1) / count)
-        return found
+        squares, powers = (self._by_chunk(table)[:, chunks] for table in (at.LEFT, at.POWERS))
+        weights = powers + 1e-30  # of silence each chunk counts alike
+        left = (squares / at.CHUNK * weights).sum(axis=1) / weights.sum(axis=1)
+        return np.asarray(np.sqrt(left))
+
+    def _by_chunk(self, table: int) -> NDArray[np.float64]:
+        """One of the tables by chunk, (panels, DEMANDS_KEPT)."""
+        end = table + self.count(at.PANELS) * at.DEMANDS_KEPT
+        return self._floats[table:end].reshape(-1, at.DEMANDS_KEPT)
 
     def frames_at(self, first: int, count: int) -> Block:
         """A copy (count, channels) of frames that are in the ring."""

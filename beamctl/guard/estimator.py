@@ -6,6 +6,7 @@ bound that is never low. A panel without a measurement counts louder by its marg
 
 from __future__ import annotations
 
+from functools import partial
 from typing import NamedTuple
 
 import numpy as np
@@ -14,6 +15,7 @@ from numpy.typing import NDArray
 from beamctl.acoustics.exposure import band_at
 from beamctl.acoustics.transfer import REFERENCE_PA
 from beamctl.guard.field import Field
+from beamctl.guard.patterns import Patterns
 from beamctl.guard.spectrum import Analyser, Spectrum, frame_length
 from beamctl.show.show import Show
 from beamctl.show.standing import GUARDED, Caps
@@ -42,7 +44,6 @@ class Ear(NamedTuple):
 
     feeds: slice
     analyser: Analyser
-    carrier_hz: float
     home: int
     margin: float
 
@@ -60,10 +61,11 @@ class Estimator:
     """
 
     def __init__(self, show: Show, field: Field, caps: Caps) -> None:
-        self._field = field
+        self._field, self._patterns = field, Patterns(field)
         self.panels = field.panels
         self.cap_pa = cap_pa(field, caps)
         self._ears = {name: self._ear(show, name, caps) for name in self.panels}
+        self._most_pa2 = {name: self._loudest_pa2(name) for name in self.panels}
         self.most = np.stack([self._most(name) for name in self.panels])
         for name, ear in self._ears.items():  # every matrix is worked out before it is needed
             for frequency_hz in ear.analyser.frequencies_hz:
@@ -90,11 +92,15 @@ class Estimator:
         panel, feeds = show.rig.panel[name], show.cells[name].feeds
         band = band_at(panel.carrier_hz)
         assert band is not None  # a rig's carriers lie between 24 and 80 kHz
-        crossing_s = self._field.crossing_s[name]
         return Ear(
             slice(panel.first_feed - 1, panel.first_feed - 1 + feeds),
-            Analyser(show.rig.rate_hz, feeds, panel.carrier_hz, crossing_s),
-            panel.carrier_hz,
+            Analyser(
+                show.rig.rate_hz,
+                feeds,
+                panel.carrier_hz,
+                self._field.spread_s[name],
+                partial(self._field.answer, name),
+            ),
             GUARDED.index(band),
             10.0 ** (caps.margin_db[name] / 20.0),
         )
@@ -104,16 +110,22 @@ class Estimator:
         ear, field = self._ears[panel], self._field
         power = np.zeros(self.cap_pa.shape)
         for frequency_hz, vectors in spectrum.parts:
-            power[ear.home] += field.power_pa2(panel, frequency_hz, vectors[:, np.newaxis])[:, 0]
-        power[ear.home] += spectrum.rest * field.most_pa2(panel, ear.carrier_hz)
+            power[ear.home] += self._patterns.power_pa2(panel, frequency_hz, vectors)
+        power[ear.home] += spectrum.rest * self._most_pa2[panel]
         for band, squares in spectrum.bands.items():
             power[GUARDED.index(band)] = field.bound_pa2(panel, band, np.sqrt(squares))
         found: Array = np.sqrt(power) * ear.margin / self.cap_pa
         return found
 
+    def _loudest_pa2(self, panel: str) -> Array:
+        """(L,) of no more than unit drive at any one frequency of the carrier's band."""
+        stood_for = self._ears[panel].analyser.frequencies_hz.items()
+        by_sub_band = [self._field.most_pa2(panel, hz) * most**2 for hz, most in stood_for]
+        return np.asarray(np.max(by_sub_band, axis=0))
+
     def _most(self, panel: str) -> Array:
         ear = self._ears[panel]
-        drive = np.sqrt(2.0 * self._field.most_pa2(panel, ear.carrier_hz))  # a phasor of √2
+        drive = np.sqrt(2.0 * self._most_pa2[panel])  # a phasor of √2
         found: Array = drive * ear.margin / self.cap_pa[ear.home]
         return found
 

@@ -13,6 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from beamctl.acoustics.air import Air, sound_speed_m_s
+from beamctl.acoustics.elements import resonance
 from beamctl.acoustics.exposure import Band
 from beamctl.acoustics.geometry import meets_rectangle
 from beamctl.acoustics.transfer import Emitters, image, transfer
@@ -48,8 +49,9 @@ class Field:
     def __init__(self, show: Show, air: Air | None = None) -> None:
         self.listeners = listeners(show.house)
         self.panels = tuple(show.rig.panel)
-        self.crossing_s: dict[str, float] = {}  # how long sound takes across each panel
+        self.spread_s: dict[str, float] = {}  # between first and last cell to sound at a listener
         self._feeds = {name: cells.feeds for name, cells in show.cells.items()}
+        self._resonances: dict[str, tuple[float, float]] = {}
         self._air = air or Air(**show.house.air.model_dump())
         self._paths: dict[str, list[Path]] = {}
         self._matrices: dict[tuple[str, float], NDArray[np.complex64]] = {}
@@ -57,14 +59,20 @@ class Field:
         self._bounds: dict[tuple[str, Band], NDArray[np.float32]] = {}
         for name, panel in show.rig.panel.items():
             emitters = emitters_of(panel, show.cells[name], self._air)
-            self.crossing_s[name] = aperture_m(emitters) / sound_speed_m_s(self._air)
-            width = 1.0 / (panel.carrier_hz * self.crossing_s[name])
+            speed_m_s = sound_speed_m_s(self._air)
+            self._resonances[name] = emitters.resonance_hz, emitters.q
+            width = speed_m_s / (panel.carrier_hz * aperture_m(emitters))
             paths = [self._path(emitters, width, None)]
             for surface in show.house.surface.values():
                 edges = surface.corner_m, surface.along_m, surface.up_m
                 mirrored = image(emitters, *edges, surface.reflection)
                 paths.append(self._path(mirrored, width, surface))
             self._paths[name] = paths
+            self.spread_s[name] = max(_spread_m(path) for path in paths) / speed_m_s
+
+    def answer(self, panel: str, frequency_hz: Array) -> Array:
+        """Size (...) of the cells' answer, 1 at their resonance, which `power_pa2` has in it."""
+        return np.abs(resonance(frequency_hz, *self._resonances[panel]))
 
     def power_pa2(
         self, panel: str, frequency_hz: float, vectors: Phasors | NDArray[np.complex64]
@@ -76,9 +84,15 @@ class Field:
         """
         feeds, sets, count = vectors.shape
         flat = vectors.reshape(feeds, sets * count).astype(np.complex64, copy=False)
-        pressure = np.ascontiguousarray(flat.T) @ self._matrix(panel, frequency_hz)
+        pressure = self.at_places(panel, frequency_hz, flat)
         square = pressure.real**2 + pressure.imag**2
-        return self._heard(panel, square.reshape(sets, count, -1).sum(axis=1))
+        return self.heard_pa2(panel, square.reshape(sets, count, square.shape[1]).sum(axis=1))
+
+    def at_places(
+        self, panel: str, frequency_hz: float, vectors: NDArray[np.complex64]
+    ) -> NDArray[np.complex64]:
+        """Complex pressure (K, R) of vectors (F, K) at the places of all paths, for `heard_pa2`."""
+        return np.ascontiguousarray(vectors.T) @ self._matrix(panel, frequency_hz)
 
     def most_pa2(self, panel: str, frequency_hz: float) -> Array:
         """Mean square pressure (L,) that no pattern of unit drive passes, whatever its phases.
@@ -89,15 +103,27 @@ class Field:
         if key not in self._most:
             matrix = self._matrix(*key)
             power = np.sum(matrix.real**2 + matrix.imag**2, axis=0)
-            self._most[key] = self._heard(panel, power[np.newaxis])[:, 0]
+            self._most[key] = self.heard_pa2(panel, power[np.newaxis])[:, 0]
         return self._most[key]
 
     def bound_pa2(self, panel: str, band: Band, rms: Array) -> Array:
         """Mean square pressure (L,) that feeds of `rms` (F,) in a band never pass, by the triangle.
 
-        Re full-scale sines. Every feed counts with the loudest of the band's edges and middle.
+        Re full-scale sines. Every feed counts with the loudest of the band's edges and middle, and
+        with the most that its cells answer to anywhere in the band.
         """
         return np.asarray((self._bound(panel, band) @ rms.astype(np.float32)) ** 2, np.float64)
+
+    def heard_pa2(self, panel: str, power: NDArray[np.float32]) -> Array:
+        """Mean squares (L, S) of those (S, R) at places: worst in a head, paths by magnitude."""
+        total = np.zeros((len(self.listeners), len(power)))
+        row = 0
+        for path in self._paths[panel]:
+            there = power[:, row : row + len(path.places_m)]
+            worst = np.maximum.reduceat(there, path.starts, axis=1)
+            total[path.who] += np.sqrt(worst, dtype=np.float64).T
+            row += len(path.places_m)
+        return total**2
 
     # -- inside ----------------------------------------------------------------------------------
 
@@ -136,26 +162,17 @@ class Field:
             self._matrices[key] = np.ascontiguousarray(whole)  # few vectors at many places
         return self._matrices[key]
 
-    def _heard(self, panel: str, power: NDArray[np.float32]) -> Array:
-        """Mean squares (L, S) of those (S, R) at places: worst in a head, paths by magnitude."""
-        total = np.zeros((len(self.listeners), len(power)))
-        row = 0
-        for path in self._paths[panel]:
-            there = power[:, row : row + len(path.places_m)]
-            worst = np.maximum.reduceat(there, path.starts, axis=1)
-            total[path.who] += np.sqrt(worst, dtype=np.float64).T
-            row += len(path.places_m)
-        return total**2
-
     def _bound(self, panel: str, band: Band) -> NDArray[np.float32]:
         key = panel, band
         if key not in self._bounds:
             found = np.zeros((len(self.listeners), self._feeds[panel]))
+            nearest_hz = np.clip(self._resonances[panel][0], band.low_hz, band.high_hz)
+            answer = self.answer(panel, np.asarray(nearest_hz))
             for path in self._paths[panel]:
                 ears_m = path.places_m[path.starts]
-                size = np.max(
+                size = answer * np.max(
                     [
-                        np.abs(transfer(ears_m, path.emitters, self._air, hz))
+                        np.abs(transfer(ears_m, path.emitters._replace(q=0.0), self._air, hz))
                         for hz in (band.low_hz, band.mid_hz, band.high_hz)
                     ],
                     axis=0,
@@ -172,6 +189,17 @@ def aperture_m(emitters: Emitters) -> float:
     live = emitters.at_m[emitters.strength_pa_m != 0.0]
     apart = np.linalg.norm(live - live.mean(axis=0), axis=1) if len(live) else np.zeros(1)
     return 2.0 * float(np.max(apart)) + max(emitters.diameter_m, 1e-3)
+
+
+def _spread_m(path: Path) -> float:
+    """The most that cells differ in their distance to an ear of this path; 0 without one."""
+    ears_m = path.places_m[path.starts]
+    nearest, farthest = np.full(len(ears_m), np.inf), np.zeros(len(ears_m))
+    for cell_m in path.emitters.at_m:
+        distance_m = np.linalg.norm(ears_m - cell_m, axis=1)
+        np.minimum(nearest, distance_m, out=nearest)
+        np.maximum(farthest, distance_m, out=farthest)
+    return float(np.max(farthest - nearest, initial=0.0))
 
 
 def _meets(source_m: Array, ear_m: Array, surface: Surface, reach_m: float) -> bool:

@@ -11,7 +11,7 @@ from beamctl.show.house import House
 
 HEAD_RADIUS_M = 0.25
 SPACING = 0.3  # of places in a head, in widths of the beam there (wavelength over aperture)
-RINGS = 6  # at most, of places around a head's middle
+RINGS = 12  # at most, of places around a head's middle
 
 
 class Listener(NamedTuple):
@@ -42,16 +42,17 @@ def head_points(
 
     The middle first, then a hexagonal lattice over the head's front half sphere as seen from the
     source. `rise` is the pressure that a peak midway between lattice places has over theirs: with
-    it no beam that passes between them is missed (main lobe of a line source, sin x / x).
+    it no beam that passes between them is missed (main lobe of a line source, sin x / x); of side
+    lobes, which turn faster, up to 1 dB can be.
     """
     way = ear_m - source_m
-    distance_m = max(float(np.linalg.norm(way)), HEAD_RADIUS_M)
-    width_m = width_per_m * distance_m
+    distance_m = float(np.linalg.norm(way))
+    toward = way / distance_m if distance_m > 0.0 else np.array((0.0, 1.0, 0.0))
+    width_m = width_per_m * max(distance_m, HEAD_RADIUS_M)
     spacing_m = max(SPACING * width_m, HEAD_RADIUS_M / RINGS)
     offsets = _lattice(spacing_m)
-    across = _across(way / distance_m)
-    toward = np.sqrt(HEAD_RADIUS_M**2 - np.sum(offsets**2, axis=-1))
-    front = ear_m + offsets @ across - toward[:, np.newaxis] * way / distance_m
+    depth_m = np.sqrt(np.maximum(HEAD_RADIUS_M**2 - np.sum(offsets**2, axis=-1), 0.0))
+    front = ear_m + offsets @ _across(toward) - depth_m[:, np.newaxis] * toward
     gap_m = min(spacing_m / np.sqrt(3.0), HEAD_RADIUS_M)
     rise = 1.0 / max(float(np.sinc(min(gap_m / width_m, 0.6))), 0.5)
     places = np.concatenate((ear_m[np.newaxis], front))
@@ -59,11 +60,18 @@ def head_points(
 
 
 def _lattice(spacing_m: float) -> NDArray[np.float64]:
-    """Offsets (K, 2) of a hexagonal lattice within the head's radius, the middle among them."""
-    count = int(HEAD_RADIUS_M / spacing_m) + 1
+    """Offsets (K, 2) of a hexagonal lattice, pulled in so that it covers the head to its edge.
+
+    No place within the head's radius is farther than spacing / √3 from one of them.
+    """
+    reach_m = HEAD_RADIUS_M + spacing_m / np.sqrt(3.0)
+    count = int(2.0 * reach_m / np.sqrt(3.0) / spacing_m)
     i, j = np.meshgrid(*[np.arange(-2 * count, 2 * count + 1)] * 2, indexing="ij")
     offsets = spacing_m * np.stack((i + 0.5 * j, np.sqrt(0.75) * j), axis=-1).reshape(-1, 2)
-    return np.asarray(offsets[np.sum(offsets**2, axis=-1) <= HEAD_RADIUS_M**2])
+    apart_m = np.linalg.norm(offsets, axis=-1)
+    near = apart_m <= reach_m
+    inward = HEAD_RADIUS_M / np.maximum(apart_m[near], HEAD_RADIUS_M)
+    return np.asarray(offsets[near] * inward[:, np.newaxis])
 
 
 def _across(unit: NDArray[np.float64]) -> NDArray[np.float64]:

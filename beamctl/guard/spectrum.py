@@ -8,11 +8,13 @@ independent vectors are kept, and of all the rest the power.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 from scipy.fft import rfft  # several times as fast as NumPy's in single precision
+from scipy.linalg import eigh
 
 from beamctl.acoustics.exposure import Band, band_at
 from beamctl.show.standing import GUARDED
@@ -21,18 +23,19 @@ Array = NDArray[np.float64]
 
 FRAME_S = 0.0054  # about; a power of two
 AUDIBLE_HZ = 17_800.0  # below this nothing belongs into a feed
-TURN = 0.6  # the most that a sub-band's width times the sound's way across a panel may be, cycles
-WIDEST_HZ, NARROWEST_HZ = 1500.0, 400.0
-VECTORS = 4  # at most, kept of a sub-band
+TURN = 0.6  # the most that a sub-band's width times the cells' spread in time may be, cycles
+WIDEST_HZ, NARROWEST_HZ = 2000.0, 400.0
+VECTORS = 8  # at most, kept of a sub-band: as many unlike beams are told apart
 NEGLIGIBLE = 3e-5  # of the band's power: vectors below it go to the rest
 
 
 class SubBand(NamedTuple):
-    """One slice of the carrier's band: bins low … high - 1."""
+    """One slice of the carrier's band: bins low … high - 1, and the cells' answer there re mid."""
 
     mid_hz: float
     low: int
     high: int
+    answer: NDArray[np.float32]
 
 
 Vectors = NDArray[np.complex64]
@@ -41,7 +44,8 @@ Vectors = NDArray[np.complex64]
 class Spectrum(NamedTuple):
     """One panel over one step; powers are squares of phasors, 1 for a full-scale sine.
 
-    parts    of the carrier's band: frequency in hertz and vectors (F, K) of each sub-band
+    parts    of the carrier's band: frequency in hertz and vectors (F, K) of each sub-band, every
+             bin by what the cells answer to it re that frequency
     rest     power of the carrier's band that no vector holds
     bands    band → (F,) power of each feed, for all other bands that hold any
     drive    root of the summed mean squares of the feeds
@@ -64,8 +68,15 @@ def frame_length(rate_hz: int) -> int:
 class Analyser:
     """Spectra of one panel: `take` wants steps of a fixed multiple of half a frame, in order."""
 
-    def __init__(self, rate_hz: int, feeds: int, carrier_hz: float, crossing_s: float) -> None:
-        """`crossing_s`: how long sound takes across the panel."""
+    def __init__(
+        self,
+        rate_hz: int,
+        feeds: int,
+        carrier_hz: float,
+        spread_s: float,
+        answer: Callable[[Array], Array] = np.ones_like,
+    ) -> None:
+        """`spread_s`: between first and last cell at a listener; `answer` of cells, by hertz."""
         self._n = frame_length(rate_hz)
         sine = np.sin(np.pi * (np.arange(self._n) + 0.5) / self._n)
         self._window = (2.0 * np.sqrt(2.0) / self._n * sine).astype(np.float32)
@@ -78,13 +89,13 @@ class Analyser:
             for band in GUARDED
         }
         self._home = self._bands.pop(home) if home in self._bands else (0, 0)
-        width_hz = float(np.clip(TURN / max(crossing_s, 1e-9), NARROWEST_HZ, WIDEST_HZ))
-        self._subs = sub_bands(hz, self._home, carrier_hz, width_hz)
+        width_hz = float(np.clip(TURN / max(spread_s, 1e-9), NARROWEST_HZ, WIDEST_HZ))
+        self._subs = sub_bands(hz, self._home, carrier_hz, width_hz, answer)
 
     @property
-    def frequencies_hz(self) -> tuple[float, ...]:
-        """The frequencies that stand for the sub-bands."""
-        return tuple(sub.mid_hz for sub in self._subs)
+    def frequencies_hz(self) -> dict[float, float]:
+        """The frequencies that stand for the sub-bands, and the most of a bin's answer re each."""
+        return {sub.mid_hz: float(np.max(sub.answer)) for sub in self._subs}
 
     def take(self, block: NDArray[np.float32]) -> Spectrum:
         """Spectrum of the next step (n, F), n a multiple of half a frame."""
@@ -119,15 +130,21 @@ class Analyser:
             if held <= least:
                 rest += held
                 continue
-            snapshots = bins[:, :, sub.low : sub.high].reshape(len(bins), -1)
+            answered = bins[:, :, sub.low : sub.high] * sub.answer
+            snapshots = answered.reshape(len(bins), -1)
             vectors, left = principal(snapshots, least)
-            parts.append((sub.mid_hz, vectors))
+            if vectors.shape[1]:
+                parts.append((sub.mid_hz, vectors))
             rest += left
         return parts, rest
 
 
 def sub_bands(
-    hz: Array, home: tuple[int, int], carrier_hz: float, width_hz: float
+    hz: Array,
+    home: tuple[int, int],
+    carrier_hz: float,
+    width_hz: float,
+    answer: Callable[[Array], Array],
 ) -> list[SubBand]:
     """Slices of about `width_hz` over the bins of `home`, one of them about the carrier."""
     low, high = home
@@ -136,12 +153,13 @@ def sub_bands(
     for number in np.unique(place):
         bins = low + np.flatnonzero(place == number)
         middle = carrier_hz if number == 0 else float(np.mean(hz[bins]))
-        found.append(SubBand(middle, int(bins[0]), int(bins[-1]) + 1))
+        among = answer(hz[bins]) / answer(np.array([middle]))
+        found.append(SubBand(middle, int(bins[0]), int(bins[-1]) + 1, among.astype(np.float32)))
     return found
 
 
 def principal(snapshots: Vectors, least: float) -> tuple[Vectors, float]:
-    """The strongest orthogonal vectors (F, K ≤ 4) of snapshots (F, M), and the power of the rest.
+    """The strongest orthogonal vectors (F, K) of snapshots (F, M), and the power of the rest.
 
     The left singular vectors, each times its singular value, whose power is over `least`: their
     powers and the rest add to the snapshots'.
@@ -149,7 +167,8 @@ def principal(snapshots: Vectors, least: float) -> tuple[Vectors, float]:
     feeds, count = snapshots.shape
     few = count <= feeds
     gram = snapshots.conj().T @ snapshots if few else snapshots @ snapshots.conj().T
-    powers, turns = np.linalg.eigh(gram)
-    kept = [k for k in range(len(powers) - 1, -1, -1)[:VECTORS] if powers[k] > least]
+    last = len(gram) - 1
+    powers, turns = eigh(gram, subset_by_index=(max(0, last - VECTORS + 1), last))
+    kept = np.flatnonzero(powers > least)
     vectors = snapshots @ turns[:, kept] if few else turns[:, kept] * np.sqrt(powers[kept])
     return vectors, max(0.0, float(np.trace(gram).real) - float(powers[kept].sum()))

@@ -31,6 +31,7 @@ QUIET = (
     1e-6  # of a full-scale sine on every feed: below it the alarm has no carrier to compare with
 )
 ALARM_S = 1.0
+NO_SAMPLE = 16.0  # from there on, and what is no number, the final stage sends nothing
 EXCESS_DB = 3.0  # over a cap in spite of its ceilings: then nothing obeys, and it trips
 
 
@@ -62,6 +63,8 @@ class Watch:
 
     def take(self, block: NDArray[np.float32]) -> Array:
         """Read the next step (step_n, channels); returns the ceilings (panels,) from now on."""
+        if not np.abs(block).max() < NO_SAMPLE:
+            block = np.where(np.abs(block) < NO_SAMPLE, block, np.float32(0.0))
         step = self._estimator.take(block)
         self._under_way.append(step)
         ceilings = self._ceilings.next(step, self._windows.allowed(), self.step_s)

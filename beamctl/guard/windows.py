@@ -40,24 +40,26 @@ class Windows:
         return mean
 
     def allowed(self) -> Array:
-        """Mean square re cap that may go on from now without any window passing the cap.
+        """Mean square re cap that may go on from now without a window passing the cap.
 
         For every share u of the window: what is in its newest 1 - u, and u of what follows, must
-        not be more than the whole window at its cap.
+        not be more than the whole window at its cap. (Of what swings within the least share, a
+        window may pass it by what that amounts to: 0.1 dB.)
         """
         most = np.full(self._total.shape, OVERSHOOT)
+        bucket_s = self._per_bucket * self.step_s
         for share in SHARES:
-            held = self._newest(round((1.0 - share) * self._length)) / self.averaging_s
-            np.minimum(most, (1.0 - held) / share, out=most)
+            follow = max(1, round(share * self._length))
+            left_s = self._length * bucket_s - self._newest(self._length - follow)
+            np.minimum(most, left_s / (follow * bucket_s), out=most)
         allowed: Array = np.maximum(most, 0.0)
         return allowed
 
     def _newest(self, buckets: int) -> Array:
-        """Seconds at the cap in the newest buckets, the one that is being filled among them."""
+        """Seconds at the cap in the newest buckets, besides one that is being filled."""
         if buckets == 0 or self._steps == 0:
             return np.zeros_like(self._total)
-        newest = (self._steps - 1) // self._per_bucket
-        first = max(0, newest - buckets + 1)
+        first = max(0, self._steps // self._per_bucket - buckets)
         kept: Array = self._total - self._marks[first % len(self._marks)]
         return kept
 
@@ -80,11 +82,10 @@ class Dose:
         percent: Array = 100.0 * self._windows.mean()
         return percent
 
-    def counted(self) -> Array:
-        """(2, L): percent over the window and since doors, for a guard that takes over."""
-        return np.stack((self.percent, self.since_doors))
-
     def carry_on(self, counted: Array) -> None:
-        """Take over what another had `counted`; it stays in the window for as long as one lasts."""
+        """Take over (2, L) percent, over the window and since doors, that another had counted.
+
+        It stays in the window for as long as one lasts.
+        """
         self._windows.add(counted[0] / 100.0 * self._windows.averaging_s / self._windows.step_s)
         self.since_doors = counted[1].copy()

@@ -32,7 +32,7 @@ from beamctl.engine.callback import ADDRESS
 from beamctl.engine.chain import ramp_n, wires_of
 from beamctl.engine.outlet import Outlet, ring_frames
 from beamctl.engine.renderer import Renderer
-from beamctl.errors import BeamctlError, DeviceError
+from beamctl.errors import BeamctlError, DeviceError, ShowError
 from beamctl.files.reader import load_show
 from beamctl.host.loading import prepare_sounds
 from beamctl.host.priority import (
@@ -44,7 +44,9 @@ from beamctl.host.priority import (
 from beamctl.host.quiet import send_native_chatter_to
 from beamctl.host.status import Status
 from beamctl.host.warming import warm
+from beamctl.show.checks import GUARD
 from beamctl.show.records import Record
+from beamctl.show.show import Show
 from beamctl.sinks.open import open_sink
 
 METER_DECAY = 0.97  # of the peak meter, per quantum
@@ -61,6 +63,7 @@ class Task(NamedTuple):
     outlet: str  # path of the shared memory
     status: str
     log: str
+    digests: dict[str, str]  # of the show as the host read it
 
 
 def engine_main(connection: Connection, task: Task) -> None:
@@ -81,6 +84,14 @@ def _tell(connection: Connection, message: dict[str, Any]) -> None:
     connection.send_bytes(json.dumps(message).encode())
 
 
+def _check_same(show: Show, digests: dict[str, str]) -> None:
+    """ShowError when `show` would play otherwise than the one that the host read."""
+    both = (digests | dict(show.digests)).keys() - {GUARD, "wire.toml"}
+    if changed := sorted(n for n in both if digests.get(n) != show.digests.get(n)):
+        what = f"{', '.join(changed)} changed on disk since the host started"
+        raise ShowError(what, "end the host and start it again to take the change")
+
+
 class Engine:
     """One renderer, one outlet, one sink, one line to the host."""
 
@@ -89,6 +100,7 @@ class Engine:
         self._inbox: queue.SimpleQueue[dict[str, Any]] = queue.SimpleQueue()
         self._status = Status.attach(Path(task.status))
         show = load_show(Path(task.folder))
+        _check_same(show, task.digests)
         sounds = prepare_sounds(show, self._progress)
         started = time.monotonic()
         self._progress("compiled code", 0, 1)

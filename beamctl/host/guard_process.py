@@ -5,9 +5,9 @@ by samples; the wall clock is only watched for jumps, since the evening's record
 error ends the process: without it no lease is renewed, and the gate shuts.
 
 From the host:  {"attach": path}, {"clear": true}, {"stop": true}
-To the host:    {"progress": [what, done, of]}, {"barred": {cue: why}}, {"ready": true},
-                {"reading": {...}} and {"levels": [...]} several times a second, {"dose": [...]}
-                every second, {"trip": reason}, {"blind": reason} before it ends
+To the host:    {"progress": [what, done, of]}, {"barred": {cue: why}}, {"ready": true} once it
+                sees samples, {"reading": {...}} and {"levels": [...]} several times a second,
+                {"trip": reason}, {"blind": reason} before it ends
 """
 
 from __future__ import annotations
@@ -39,7 +39,7 @@ from beamctl.show.standing import GUARDED
 LEASE_S = 0.15
 POLL_S = 0.0015
 CLOCK_JUMP_S = 2.0
-READING_S, LEVELS_S, DOSE_S = 0.05, 0.2, 1.0
+READING_S, LEVELS_S = 0.05, 0.2
 
 
 class GuardTask(NamedTuple):
@@ -47,7 +47,7 @@ class GuardTask(NamedTuple):
 
     folder: str
     seal: str  # of guard, rig and house as the host read them
-    dose: list[list[float]]  # what an earlier guard of this evening had counted, or []
+    dose: list[list[float]]  # what an earlier guard had counted: over the window, since doors
     check: bool  # look through every cue first
     log: str
 
@@ -80,7 +80,7 @@ class Guard:
     def __init__(self, connection: Connection, task: GuardTask) -> None:
         self._connection = connection
         self._inbox: queue.SimpleQueue[dict[str, Any]] = queue.SimpleQueue()
-        self._due = dict.fromkeys(("progress", "reading", "levels", "dose"), 0.0)
+        self._due = dict.fromkeys(("progress", "reading", "levels"), 0.0)
         show = load_show(Path(task.folder))
         if show.seal != task.seal:
             raise BeamctlError(
@@ -90,15 +90,18 @@ class Guard:
         if task.check:
             found = barred(cue_levels(show, self._progress))
             _tell(connection, {"barred": found})
-        self._rate_hz = show.rig.rate_hz
+        rate_hz, self._quantum = show.rig.rate_hz, show.rig.quantum
+        self._lease_n = round(LEASE_S * rate_hz)
         ring_s = (show.rig.ring_ms or 32.0) / 1000.0
-        self._watch = Watch(show, round(ring_s * self._rate_hz))
+        self._watch = Watch(show, round(ring_s * rate_hz))
         if task.dose:
             self._watch.dose.carry_on(np.array(task.dose))
         self._outlet: Outlet | None = None
-        self._taken = self._left = 0
+        self._step, self._before = np.zeros((2, self._watch.step_n, show.channels), np.float32)
+        self._taken = self._filled = self._left = 0
         self._granted: list[float] | None = None
         self._trip = ""
+        self._sees = False
         self._clock_s = time.time() - time.monotonic()
         ask_for_real_time(GUARD_PRIORITY)
         gc.collect()
@@ -108,13 +111,13 @@ class Guard:
     def run(self) -> None:
         """Watch until told to stop."""
         threading.Thread(target=self._listen, daemon=True).start()
-        _tell(self._connection, {"ready": True})
         while self._take_messages():
             if self._outlet is not None:
                 self._follow(self._outlet)
-                self._grant(self._outlet)
             self._watch_clock()
-            self._say()
+            self._say()  # a trip is told before the lease ends by it
+            if self._outlet is not None:
+                self._grant(self._outlet)
             time.sleep(POLL_S)
         if self._outlet is not None:
             self._outlet.grant(0)
@@ -150,39 +153,56 @@ class Guard:
                 return False
 
     def _attach(self, outlet: Outlet) -> None:
-        """Follow a stream from the next whole chunk on."""
+        """Follow a stream from a chunk on that is not written over before it is read."""
         self._outlet = outlet
         self._granted = None
         self._watch.begin()
-        self._taken = -(-outlet.count(at.READ) // at.CHUNK) * at.CHUNK
-        self._left = self._taken
+        start = outlet.count(at.READ) + outlet.frames // 4
+        self._taken = self._left = -(-start // at.CHUNK) * at.CHUNK
+        self._filled = 0
 
     # -- the stream ------------------------------------------------------------------------------
 
     def _follow(self, outlet: Outlet) -> None:
-        """Read every step that is whole in the ring, and settle those that have left."""
+        """Collect what entered the ring, a step at a time, and settle the steps that have left.
+
+        What was written over before it could be read counts as what was read before it.
+        """
         step_n = self._watch.step_n
-        while outlet.count(at.WRITTEN) - self._taken >= step_n:
-            block = outlet.frames_at(self._taken, step_n)
-            if outlet.count(at.WRITTEN) - self._taken > outlet.frames:
-                self._attach(outlet)  # too late: it was written over meanwhile
-                return
-            self._granted = [float(c) for c in self._watch.take(block)]
-            self._taken += step_n
-            self._grant(outlet)
-        while self._taken - self._left >= step_n and outlet.count(at.READ) >= self._left + step_n:
+        if outlet.count(at.WRITTEN) - self._taken > outlet.frames + self._lease_n:
+            self._attach(outlet)  # nothing can have sounded to the end of that
+        while (n := min(outlet.count(at.WRITTEN) - self._taken, step_n - self._filled)) > 0:
+            part = slice(self._filled, self._filled + n)
+            self._step[part] = outlet.frames_at(self._taken, n)
+            kept_from = outlet.count(at.WRITTEN) + self._quantum - outlet.frames
+            if self._taken < min(kept_from, outlet.count(at.READ)):
+                if self._granted is None:
+                    self._attach(outlet)
+                    return
+                self._step[part] = self._before[part]
+            self._taken, self._filled = self._taken + n, self._filled + n
+            if self._filled == step_n:
+                self._granted = [float(c) for c in self._watch.take(self._step)]
+                self._step, self._before, self._filled = self._before, self._step, 0
+                self._grant(outlet)
+        whole = self._taken - self._filled
+        while self._left + step_n <= min(whole, outlet.count(at.READ)):
             self._watch.left(outlet.gains_left(self._left, step_n))
             self._left += step_n
 
     def _grant(self, outlet: Outlet) -> None:
         """Renew the lease; not after a trip, and not before a step was read."""
-        if self._watch.trip or self._granted is None:
+        if self._watch.trip:
             if outlet.count(at.LEASE_UNTIL):
                 outlet.grant(0)
             return
-        until = outlet.count(at.READ) + round(LEASE_S * self._rate_hz)
+        if self._granted is None:
+            return
         same = self._granted == outlet.granted(outlet.count(at.GRANTS))
-        outlet.grant(until, None if same else self._granted)
+        outlet.grant(outlet.count(at.READ) + self._lease_n, None if same else self._granted)
+        if not self._sees:
+            self._sees = True
+            _tell(self._connection, {"ready": True})
 
     def _watch_clock(self) -> None:
         jumped_s = time.time() - time.monotonic() - self._clock_s
@@ -199,7 +219,7 @@ class Guard:
             self._trip = self._watch.trip
             _tell(self._connection, {"trip": self._trip})
         now = time.monotonic()
-        for what, every_s in (("reading", READING_S), ("levels", LEVELS_S), ("dose", DOSE_S)):
+        for what, every_s in (("reading", READING_S), ("levels", LEVELS_S)):
             if now >= self._due[what]:
                 self._due[what] = now + every_s
                 _tell(self._connection, {what: getattr(self, f"_{what}")()})
@@ -224,6 +244,3 @@ class Guard:
                 level_db, band, cap_db, dose.percent, dose.since_doors, strict=True
             )
         ]
-
-    def _dose(self) -> list[list[float]]:
-        return [[float(v) for v in row] for row in self._watch.dose.counted()]

@@ -17,7 +17,7 @@ from typing import Any
 
 from beamctl.engine import layout as at
 from beamctl.engine.drift import Drift
-from beamctl.errors import BeamctlError, DeviceError
+from beamctl.errors import BeamctlError, DeviceError, ShowError
 from beamctl.files.reader import load_show
 from beamctl.host import counters
 from beamctl.host.asking import event_of
@@ -43,6 +43,7 @@ SLACK_QUANTA = 1  # between what the engine has reached and the sample an event 
 LEASE_S = 0.15
 SNAPSHOT_S = 0.04
 COUNTERS_S = 10.0
+OPENS_S = 0.3
 FILES_S = 1.0
 STOP_S = 5.0
 
@@ -72,6 +73,8 @@ class Host:
         self._stopping = False
         self._failure: BeamctlError | None = None
         self._opened_once = False
+        self._unplayable = False  # what is on disk is not the show that this host plays
+        self._asked: int | None = None  # the frame by which the final stage must have opened
         self._snapshot: tuple[float, bytes] = (-1.0, b"")
         self._counted_at = time.monotonic()
         self._files_at, self._changed = 0.0, False
@@ -113,8 +116,8 @@ class Host:
         self._look_at_files()
         self._count()
         if self._player.output in ("SHUT", "OPEN", "HUSHED", "TRIPPED"):
-            self._live()
             self._tell_final_stage()
+            self._live()
             if not self._batches.open:  # what hangs on a GO waits until its sample is certain
                 ahead = round(AHEAD_S * self.show.rig.rate_hz)
                 self._send(self._player.advance(self._now() + ahead))
@@ -134,6 +137,11 @@ class Host:
             life = round(LEASE_S * self.show.rig.rate_hz)
             outlet.host_lives(outlet.count(at.READ) + life)
             self._drift.note(time.monotonic_ns(), outlet.count(at.LAST_READ))
+            late = self._asked is not None and outlet.count(at.READ) > self._asked
+            if late and self._player.output == "OPEN":  # no lease was there to open on
+                self._asked = None
+                self._write(self._player.sink("host-over", self._now()))
+                self._notice("asked to open, the way out stayed shut; * then Enter asks again")
 
     def _tell_final_stage(self) -> None:
         """Put into the journal what the final stage did, and act on what nobody asked for."""
@@ -143,6 +151,7 @@ class Host:
                 ceilings = {"ceilings": outlet.granted(event.value)}
                 self._write([Record(event.sample, "grant", args=ceilings)])
             elif event.name in ("opened", "hushed", "lease-over", "host-over"):
+                self._asked = None
                 args = {"open": int(event.name == "opened"), "n": event.value, "why": event.name}
                 self._write([Record(event.sample, "gate", args=args)])
             elif event.name == "dry":
@@ -225,11 +234,15 @@ class Host:
             self.stop()
             return
         self._notice(what)
+        if message["code"] == ShowError.exit_code:
+            self._unplayable = True
+            self._lose(f"{what}: {do}")
+            return
         self._lose("looking for the sink")
         self._keeper.look_for_sink()
 
     def _engine_gone(self) -> None:
-        if self._keeper.looking:
+        if self._keeper.looking or self._unplayable:
             return  # it said why before it went
         if not self._opened_once:
             self._failure = DeviceError("the engine ended while it started", "its log tells why")
@@ -260,8 +273,11 @@ class Host:
             if record.what == "gate" and outlet is not None:
                 if record.args["open"]:
                     outlet.ask_open(int(record.args["n"]))
+                    wait = round(OPENS_S * self.show.rig.rate_hz)
+                    self._asked = outlet.count(at.READ) + wait
                 else:
                     outlet.hush()
+                    self._asked = None
         self._batches.send([r for r in records if r.what not in FINAL], self._keeper.send)
 
     def _write(self, records: Iterable[Record]) -> None:

@@ -73,6 +73,7 @@ class Keeper:
             str(self.outlet_path),
             str(self._status_path),
             str(state_folder() / "engine.log"),
+            dict(self._show.digests),
         )
         self._generation += 1
         self.ready = {}

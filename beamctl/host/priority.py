@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import contextlib
 import os
+from collections.abc import Iterator
 
 RENDER_PRIORITY = 20  # above everything ordinary, below a sound server (common practice)
 GUARD_PRIORITY = 15  # it renews the lease
@@ -31,6 +32,24 @@ def be_ordinary() -> None:
     if hasattr(os, "sched_setscheduler"):
         with contextlib.suppress(OSError):
             os.sched_setscheduler(0, os.SCHED_OTHER, os.sched_param(0))
+
+
+@contextlib.contextmanager
+def ordinarily() -> Iterator[None]:
+    """What the calling thread starts in this block has ordinary scheduling from its first moment.
+
+    A process that loads itself in real time would keep those of its own priority waiting.
+    """
+    if not hasattr(os, "sched_setscheduler"):
+        yield
+        return
+    policy, parameters = os.sched_getscheduler(0), os.sched_getparam(0)
+    be_ordinary()
+    try:
+        yield
+    finally:
+        with contextlib.suppress(OSError):
+            os.sched_setscheduler(0, policy, parameters)
 
 
 def ring_ms_for(asked_ms: float | None, priority: str) -> float:

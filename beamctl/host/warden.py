@@ -18,9 +18,10 @@ from typing import Any
 from beamctl.host.guard_process import GuardTask, guard_main
 from beamctl.host.link import encode
 from beamctl.host.places import state_folder
+from beamctl.host.priority import ordinarily
 from beamctl.show.show import Show
 
-STALE_S = 0.2  # without a reading it is blind …
+STALE_S = 0.5  # without a reading it is blind, the lease long over …
 STALLED_S = 2.0  # … and then it is ended
 DEATHS, DEATHS_S = 3, 60.0
 
@@ -35,9 +36,8 @@ class Warden:
         self.reading: dict[str, Any] = {}
         self.levels: list[list[Any]] = []
         self._why = "starting"
-        self._read_at = time.monotonic()
-        self._ready = False
-        self._dose: list[list[float]] = []
+        self._read_at = self._watched_at = time.monotonic()
+        self._ready = self._checked = False
         self._outlet = ""
         self._deaths: deque[float] = deque(maxlen=DEATHS)
         self._process: Any = None
@@ -49,12 +49,14 @@ class Warden:
         context = get_context("spawn")
         ours, theirs = context.Pipe()
         log = str(state_folder() / "guard.log")
-        first = self._generation == 0
-        task = GuardTask(self._show.folder, self._show.seal, self._dose, first, log)
+        check = not self._checked
+        dose = [[row[column] for row in self.levels] for column in (3, 4)] if self.levels else []
+        task = GuardTask(self._show.folder, self._show.seal, dose, check, log)
         self._generation += 1
         self._ready = False
         self._process = context.Process(target=guard_main, args=(theirs, task), daemon=True)
-        self._process.start()
+        with ordinarily():
+            self._process.start()
         theirs.close()
         self._line = ours
         hear = threading.Thread(target=self._hear, args=(ours, self._generation), daemon=True)
@@ -91,25 +93,30 @@ class Warden:
             return ""
         if "ready" in message:
             self._ready = True
+        elif "barred" in message:
+            self._checked = True
         elif "progress" in message:
             what, done, of = message["progress"]
             self._why = f"looking through the cues: {what}, {done} of {of}"
         elif "levels" in message:
             self.levels = message["levels"]
-        elif "dose" in message:
-            self._dose = message["dose"]
         elif "reading" in message:
             self.reading = message["reading"]
         elif "blind" in message:
-            self._ready, self._why = False, message["blind"]
+            return self._blinded(message["blind"])
         elif "gone" in message:
             return self._gone()
         self._read_at = time.monotonic()
         return str(message.get("trip", ""))
 
     def watch(self) -> None:
-        """End a guard that stalls."""
-        if self._ready and time.monotonic() - self._read_at > STALLED_S:
+        """End a guard that stalls; where the host itself did, its readings only wait."""
+        now = time.monotonic()
+        if now - self._watched_at > STALE_S / 2:
+            self._read_at = now
+        self._watched_at = now
+        if self._ready and now - self._read_at > STALLED_S:
+            self._blinded("it stalled, and was ended")
             self._process.kill()
 
     def end(self, wait_s: float) -> None:
@@ -124,17 +131,21 @@ class Warden:
 
     # -- inside ----------------------------------------------------------------------------------
 
+    def _blinded(self, why: str) -> str:
+        """It sees nothing any more; returns why, when it did so far."""
+        saw, self._ready, self._why = self._ready, False, why
+        return why if saw else ""
+
     def _gone(self) -> str:
-        """The process ended: say why, and start another unless there were too many."""
-        if self._ready:
-            self._why = "the guard died"
-        why, self._ready = self._why, False
+        """The process ended: start another unless there were too many; returns why, if news."""
+        news = self._blinded("the guard died") if self._ready else ""
         now = time.monotonic()
         self._deaths.append(now)
         if len(self._deaths) < DEATHS or now - self._deaths[0] > DEATHS_S:
+            why = self._why
             self.start()
             self._why = f"{why}; starting again"
-        return why
+        return news
 
     def _hear(self, line: Connection, generation: int) -> None:
         try:

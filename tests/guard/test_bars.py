@@ -208,7 +208,7 @@ def test_no_step_turns_a_lobe_by_more_than_a_quarter() -> None:
 
 
 def test_without_listeners_nothing_is_found() -> None:
-    assert levels_of(one_panel(cue("1", start("a", azimuth_deg=0.0)), house={})) == {}
+    assert levels_of(one_panel(cue("1", start("a", azimuth_deg=0.0)), house={"block": {}})) == {}
 
 
 def test_a_cue_that_sounds_nothing_has_no_level() -> None:
@@ -220,4 +220,4 @@ def test_seats_behind_every_panel_are_told() -> None:
     house = {"block": {"stalls": STALLS, "choir": behind}}
     assert unheard(one_panel(house=house)) == ("choir X1", "choir X2")
     assert unheard(one_panel()) == ()
-    assert unheard(one_panel(house={})) == ()
+    assert unheard(one_panel(house={"block": {}})) == ()

@@ -27,7 +27,7 @@ from beamctl.engine.chain import Chain
 from beamctl.engine.outlet import Outlet
 from beamctl.host.loading import prepare_sounds
 from beamctl.host.offline import Stream
-from beamctl.host.places import memory_folder, show_key
+from beamctl.host.places import memory_folder, show_key, state_folder
 from beamctl.show.records import Record
 from beamctl.show.show import Show
 
@@ -111,16 +111,31 @@ def going_on(pid: int) -> Iterator[None]:
         os.kill(pid, signal.SIGCONT)
 
 
+def children_of(running: Running, log: str) -> list[int]:
+    """Process numbers of those children of a host that write to this log."""
+    host = running.process.pid
+    found = []
+    for child in Path(f"/proc/{host}/task/{host}/children").read_text().split():
+        with contextlib.suppress(OSError):  # it may end meanwhile
+            if Path(f"/proc/{child}/fd/1").readlink().name == log:
+                found.append(int(child))
+    return found
+
+
 def engines_of(running: Running) -> list[int]:
     """Process numbers of the engines of a host."""
-    host = running.process.pid
-    children = Path(f"/proc/{host}/task/{host}/children").read_text().split()
-    return [int(c) for c in children if b"spawn_main" in Path(f"/proc/{c}/cmdline").read_bytes()]
+    return children_of(running, "engine.log")
 
 
 def engine_of(running: Running) -> int:
     """Process number of its one engine."""
     (found,) = engines_of(running)
+    return found
+
+
+def guard_of(running: Running) -> int:
+    """Process number of the guard of a host."""
+    (found,) = children_of(running, "guard.log")
     return found
 
 
@@ -164,6 +179,9 @@ class Desk:
     """A desk that has joined a host, on a terminal that is read, or that nobody ever reads."""
 
     def __init__(self, show: Path, frozen: bool) -> None:
+        read = state_folder() / "cautioned" / show_key(show)  # the caution, some other day
+        read.parent.mkdir(parents=True, exist_ok=True)
+        read.touch()
         self._ours, theirs = pty.openpty()
         termios.tcsetwinsize(self._ours, (60, 200))
         self.process = subprocess.Popen(
@@ -225,8 +243,10 @@ class Stage:
         self.join()
 
     def join(self) -> None:
-        """Look at the engine that runs now."""
+        """Look at the engine that runs now, once the guard does too."""
         self.outlet = Outlet.attach(self._path)
+        lease = self.outlet.memory[at.LEASE_UNTIL :]
+        wait_for(lambda: lease[0] > self.outlet.count(at.READ), "the guard's lease", STARTS_S)
 
     def play(self) -> None:
         """Open the output and fire the cue, until both its acts are under way and written down."""
@@ -240,9 +260,13 @@ class Stage:
     def final_records(self) -> list[Record]:
         """What the final stage did since the cue was played, as a host that lives writes it."""
         found = []
+        args: dict[str, object]
         for event in self.outlet.events():
             if event.name == "dry":
                 found.append(Record(event.sample, "dry", args={"n": event.value}))
+            elif event.name == "granted":
+                args = {"ceilings": self.outlet.granted(event.value)}
+                found.append(Record(event.sample, "grant", args=args))
             else:
                 args = {"open": int(event.name == "opened"), "n": event.value, "why": event.name}
                 found.append(Record(event.sample, "gate", args=args))

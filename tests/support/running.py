@@ -74,7 +74,7 @@ class Running:
         """What a desk would see now."""
         return self.link.snapshot()
 
-    def act(self, name: str, **arguments: object) -> None:
+    def act(self, name: str, /, **arguments: object) -> None:
         """Ask for an action, which must not be refused."""
         answer = self.link.act(name, **arguments)
         assert answer.done, f"{name}: {answer.text}"
@@ -108,7 +108,7 @@ class Running:
 def host(
     show: Path, sink: str, journal: Path, env: dict[str, str] | None = None
 ) -> Iterator[Running]:
-    """A host of `show` that has opened its sink; it is gone when the block is left."""
+    """A host of `show` whose sink is open and whose guard sees; gone when the block is left."""
     process = subprocess.Popen(
         [*COMMAND, "host", str(show), "--sink", sink, "--journal", str(journal)],
         stdin=subprocess.DEVNULL,
@@ -136,7 +136,8 @@ def _has_opened(running: Running) -> bool:
     if running.process.poll() is not None:
         pytest.fail(f"the host ended: {running.process.communicate()[0]}")
     try:
-        return running.snapshot().output == "SHUT"
+        found = running.snapshot()
+        return found.output == "SHUT" and found.guard.state != "BLIND"
     except (OSError, EOFError):
         return False
 

@@ -140,8 +140,10 @@ def test_a_killed_host_leaves_by_the_ramp(folder: Path, ear: Ear, figures: Figur
         judge = Judge(show, stream, stage.outlet.count(at.READ))
         heard = whole(judge, caught, ear)
         heard.sounds_before(blow.frame)
-        assert [why for why, _ in judge.gates()] == ["opened", "hushed"]
-        judge.falls_by_the_ramp(heard, judge.gates()[1][1])
+        opened, (why, fall) = judge.gates()
+        assert opened[0] == "opened"
+        assert why in ("hushed", "lease-over")  # engine and guard both end what sounds, and race
+        judge.falls_by_the_ramp(heard, fall)
         zero_ms = heard.ms_to_zero(blow.frame)
         figures.note(f"{ear.name}: host killed, zero after", zero_ms, ZERO_MS)
 
@@ -166,7 +168,7 @@ def test_a_stopped_host_leaves_by_the_ramp_and_stays_shut(
         show, (stream,) = offline.recall(journal)
         judge = Judge(show, stream)
         falls, rises = judge.gates()[1:-1:2], judge.gates()[2:-1:2]
-        assert [why for why, _ in falls] == ["lease-over"] * share
+        assert [why for why, _ in falls] == ["host-over"] * share
         assert [why for why, _ in rises] == ["opened"] * share
         assert outputs(journal) == ["SHUT", "OPEN", *["HUSHED", "OPEN"] * share, "COLD"]
         for (blow, caught), (_, fall), (_, rise) in zip(landed, falls, rises, strict=True):
