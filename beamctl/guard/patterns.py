@@ -30,28 +30,25 @@ class Patterns:
     def power_pa2(self, panel: str, frequency_hz: float, vectors: Vectors) -> Array:
         """As `Field.power_pa2` of one set (F, K): mean square pressure (L,), never lower."""
         key = panel, frequency_hz
-        power = float(np.sum(np.abs(vectors) ** 2))
-        basis, there = self._kept.get(key) or self._grown(key, vectors, vectors[:, :0])
-        shares = basis.conj().T @ vectors
-        left = vectors - basis @ shares
-        if (besides := float(np.sum(np.abs(left) ** 2))) > BESIDES * power:
+        least = BESIDES * _power(vectors)
+        basis, there = self._kept.get(key) or self._grown(key, vectors, vectors[:, :0], least)
+        if _power(vectors - basis @ (basis.conj().T @ vectors)) > least:
             room = basis.shape[1] + vectors.shape[1] <= MOST
-            basis, there = self._grown(
-                key, left if room else vectors, basis if room else basis[:, :0]
-            )
-            shares = basis.conj().T @ vectors
-            besides = float(np.sum(np.abs(vectors - basis @ shares) ** 2))
-        pressure: Vectors = shares.T @ there
-        seen = self._field.heard_pa2(panel, _powers(pressure))[:, 0]
+            basis, there = self._grown(key, vectors, basis if room else basis[:, :0], least)
+        shares = basis.conj().T @ vectors
+        besides = _power(vectors - basis @ shares)
+        seen = self._field.heard_pa2(panel, _by_place(shares.T @ there))[:, 0]
         more = besides * self._field.most_pa2(panel, frequency_hz)
         return np.asarray((np.sqrt(seen) + np.sqrt(more)) ** 2)
 
     def _grown(
-        self, key: tuple[str, float], fresh: Vectors, basis: Vectors
+        self, key: tuple[str, float], vectors: Vectors, basis: Vectors, least: float
     ) -> tuple[Vectors, Vectors]:
-        """The set with what is fresh in it, and what all of it makes at the places."""
+        """The set with what of `vectors` was besides it, and what all of it makes at the places."""
         panel, frequency_hz = key
-        added, _ = np.linalg.qr(fresh - basis @ (basis.conj().T @ fresh))
+        fresh, sizes, _ = np.linalg.svd(_besides(vectors, basis), full_matrices=False)
+        fresh = fresh[:, sizes**2 > 0.1 * least / len(sizes)]  # the rest is rounding
+        added, _ = np.linalg.qr(_besides(fresh, basis))  # again, so that the set stays orthonormal
         there = self._field.at_places(panel, frequency_hz, added)
         if basis.shape[1]:
             there = np.concatenate((self._kept[key][1], there))
@@ -59,7 +56,18 @@ class Patterns:
         return self._kept[key]
 
 
-def _powers(pressure: Vectors) -> NDArray[np.float32]:
+def _besides(vectors: Vectors, basis: Vectors) -> Vectors:
+    """What of vectors (F, K) is not in the span of an orthonormal basis (F, B)."""
+    left: Vectors = vectors - basis @ (basis.conj().T @ vectors)
+    return left
+
+
+def _power(vectors: Vectors) -> float:
+    """Sum of squares."""
+    return float(np.sum(np.abs(vectors) ** 2))
+
+
+def _by_place(pressure: NDArray[np.complexfloating]) -> NDArray[np.float32]:
     """Summed squares (1, R) of pressures (K, R)."""
     total: NDArray[np.float32] = np.sum(pressure.real**2 + pressure.imag**2, axis=0)
     return total[np.newaxis]

@@ -37,7 +37,7 @@ class Warden:
         self.levels: list[list[Any]] = []
         self._why = "starting"
         self._read_at = self._watched_at = time.monotonic()
-        self._ready = self._checked = False
+        self._ready = self._checked = self._missing = False
         self._outlet = ""
         self._deaths: deque[float] = deque(maxlen=DEATHS)
         self._process: Any = None
@@ -110,7 +110,13 @@ class Warden:
         return str(message.get("trip", ""))
 
     def watch(self) -> None:
-        """End a guard that stalls; where the host itself did, its readings only wait."""
+        """Replace a guard that is gone, and end one that stalls.
+
+        Where the host itself stalled, the guard's readings only wait.
+        """
+        if self._missing:
+            self._missing, self._why = False, f"{self._why}; starting again"
+            self.start()
         now = time.monotonic()
         if now - self._watched_at > STALE_S / 2:
             self._read_at = now
@@ -137,14 +143,12 @@ class Warden:
         return why if saw else ""
 
     def _gone(self) -> str:
-        """The process ended: start another unless there were too many; returns why, if news."""
+        """The process ended; returns why, if news. Another is started once that was dealt with."""
         news = self._blinded("the guard died") if self._ready else ""
         now = time.monotonic()
         self._deaths.append(now)
         if len(self._deaths) < DEATHS or now - self._deaths[0] > DEATHS_S:
-            why = self._why
-            self.start()
-            self._why = f"{why}; starting again"
+            self._missing = True
         return news
 
     def _hear(self, line: Connection, generation: int) -> None:
