@@ -78,9 +78,11 @@ azimuth_deg = -10.0
 over_s = 0.05
 """
 
-CELL = """volts_at_full_scale = 5.0
+CELL_DB = 95.0  # of one cell: quiet ones, so that nothing here comes near its cap
+
+CELL = f"""volts_at_full_scale = 5.0
 max_volts = 7.0
-level_db_30cm_10v = 95.0
+level_db_30cm_10v = {CELL_DB}
 cell_mm = 9.0
 resonance_hz = 40000.0
 q = 20.0

@@ -14,7 +14,7 @@ import pytest
 import soundfile
 from support.directsum import Slab, absorption_np_m
 from support.running import beamctl
-from support.smallshow import write_show, write_steady_show
+from support.smallshow import CELL_DB, write_show, write_steady_show
 
 from beamctl.files.reader import load_show
 from beamctl.guard.travels import travels
@@ -54,7 +54,7 @@ class Ears:
     def __init__(self, show: Show, side: int) -> None:
         air = show.house.air
         through_air = np.exp(0.3 * absorption_np_m(40e3, air.temperature_c, air.humidity_pct))
-        pa_m = 20e-6 * 10.0 ** (115.0 / 20.0) * 0.3 * 0.5 * through_air
+        pa_m = 20e-6 * 10.0 ** (CELL_DB / 20.0) * 0.3 * 0.5 * through_air
         square = Slab(
             *((0.0, 0.0, 3.0), 0.0, -17.0, side, side, 0.01, 40e3, 0.009, pa_m),
             *(air.temperature_c, air.humidity_pct),
@@ -156,6 +156,8 @@ def test_inspect_lists_barred_cues_with_seat_band_second_and_the_trim_that_fits(
     tmp_path: Path,
 ) -> None:
     show = changed(write_show(tmp_path / "small"), "trim_db = -24.0", "trim_db = -8.0")
+    rig = (show / "rig.toml").read_text()
+    (show / "rig.toml").write_text(rig.replace(f"10v = {CELL_DB}", "10v = 115.0"))  # ordinary cells
     done = beamctl("inspect", show)
     assert done.returncode == 1
     (said,) = [line for line in done.stdout.splitlines() if "barred" in line]
