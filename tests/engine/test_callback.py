@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-import ctypes
 import contextlib
+import ctypes
 import inspect
 import re
 import subprocess
