@@ -21,7 +21,7 @@ NOISE_DB = 1.0  # every level is off by up to this
 
 @dataclass
 class FakeRig:
-    """A panel in its own axes (right, out, up), 115 dB cells at 5 V, with faults put in."""
+    """A panel in its own axes (right, out, up), its cells at 5 V, with faults put in."""
 
     cells: CellMap
     carrier_hz: float = 40e3
@@ -29,6 +29,7 @@ class FakeRig:
     reversed: set[int] = field(default_factory=set)
     gain_db: dict[int, float] = field(default_factory=dict)
     plugged: dict[int, int] = field(default_factory=dict)  # feed → feed whose cells it drives
+    cell_db: float = 115.0  # of one cell at 0.3 m with 10 V
 
     def swap(self, a: int, b: int) -> None:
         """Plug two feeds into one another's place."""
@@ -51,7 +52,7 @@ class FakeRig:
                 )
                 lost = 10.0 ** (-ABSORPTION_DB_M * far_m / 20.0)
                 cycles = self.carrier_hz * far_m / SPEED_M_S
-                strength = 20e-6 * 10.0 ** (115.0 / 20.0) * 0.3 * 0.5
+                strength = 20e-6 * 10.0 ** (self.cell_db / 20.0) * 0.3 * 0.5
                 total += (
                     phasor * size * lead * strength * lost * np.exp(-2j * np.pi * cycles) / far_m
                 )

@@ -10,7 +10,7 @@ import pytest
 from support.fakerig import FakeRig
 from support.person import files_in, measured
 from support.running import beamctl
-from support.smallshow import write_show
+from support.smallshow import CELL_DB, write_show
 
 from beamctl.files.levels import COLUMNS
 from beamctl.files.reader import load_show
@@ -42,7 +42,7 @@ def write_levels(show: Path, panel: str, rig: FakeRig, reference: int, seed: int
 
 def test_faults_are_found_in_a_file_of_levels(show: Path) -> None:
     cells = load_show(show).cells["square"]
-    rig = FakeRig(cells, dead={4}, reversed={9})
+    rig = FakeRig(cells, dead={4}, reversed={9}, cell_db=CELL_DB)
     rig.swap(2, 6)
     levels = write_levels(show, "square", rig, from_centre(cells)[0], 1)
     before = files_in(show)
@@ -74,7 +74,7 @@ def test_faults_are_found_in_a_file_of_levels(show: Path) -> None:
 
 def test_a_good_panel_becomes_measured_by_the_line_that_is_told(show: Path) -> None:
     cells = load_show(show).cells["strip"]  # two cells a feed, one of them known dead
-    levels = write_levels(show, "strip", FakeRig(cells), from_centre(cells)[0], 1)
+    levels = write_levels(show, "strip", FakeRig(cells, cell_db=CELL_DB), from_centre(cells)[0], 1)
     done = beamctl("wirecheck", show, "--panel", "strip", "--levels", levels)
     assert done.returncode == 0, done.stdout + done.stderr
     path, found = measured(show)

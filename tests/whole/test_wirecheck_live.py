@@ -10,7 +10,7 @@ import pytest
 import soundfile
 from support.person import begin, files_in, mark, measured, person
 from support.running import host
-from support.smallshow import RATE_HZ, write_show
+from support.smallshow import CELL_DB, RATE_HZ, write_show
 
 from beamctl.files.measurement import read_measurement
 
@@ -97,6 +97,7 @@ def test_a_seat_that_would_get_too_much_keeps_the_check_away(show: Path) -> None
         rig.read_text()
         .replace("volts_at_full_scale = 5.0", "volts_at_full_scale = 50.0")
         .replace("max_volts = 7.0", "max_volts = 70.0")
+        .replace(f"10v = {CELL_DB}", "10v = 115.0")
     )
     with person(show) as who:
         assert who.ends() == 2
