@@ -103,6 +103,8 @@ class Chain:
     def _apply(self, record: Record) -> None:
         if record.what == "dry":
             self.outlet.run_dry()
+        elif record.what == "short":
+            self.outlet.see_to(int(record.args["seen"]))
         elif record.what == "grant":
             self.outlet.grant(FOREVER, record.args["ceilings"])
         elif record.args["open"]:

@@ -68,6 +68,8 @@ def _power(memory, panel, chunk, broken):
 def at_mark(memory, table, panel, chunk):
     """A panel's value in a table by chunk; the newest there is, near the ring's end."""
     newest = memory[at.SCANNED] - 1
+    if memory[at.SEEN_TO] > 0:
+        newest = min(newest, memory[at.SEEN_TO] - 1)
     if newest < 0:
         return 0.0
     return memory.view(np.float64)[_place(table, panel, min(chunk, newest))]

@@ -94,12 +94,26 @@ def pull(memory, out, count):
     _decide(memory, read)
     _scan(memory, read + held)
     taken = min(held, count)
+    _tell_short(memory, read, taken)
     sounded = _finish(memory, out, read, taken)
     if taken < count:
         went_dry(memory, read + taken)
     memory[at.SOUNDED] += sounded
     fence()
     memory[at.READ] = read + taken
+
+
+@compiled
+def _tell_short(memory, read, taken):
+    """Log what is seen of a ring that holds less than is looked ahead: gains are made from that."""
+    if taken == 0:
+        return
+    scanned = memory[at.SCANNED]
+    last = (read + taken - 1) // at.CHUNK + at.SMOOTH
+    short = scanned if scanned <= last else 0
+    if short != memory[at.SHORT]:
+        memory[at.SHORT] = short
+        _log(memory, read, at.WENT_SHORT, short)
 
 
 @compiled

@@ -11,21 +11,24 @@ from __future__ import annotations
 WRITTEN, FLOWING = 0, 1
 # whoever grants (the guard): the lease is a sample number; GRANTS counts the rows of CEILINGS
 LEASE_UNTIL, GRANTS = 8, 9
-# the host, with a lease of its own; HUSH may be raised by anyone, and only ever grows
-OPEN_ASK, OPEN_N, HUSH, HOST_UNTIL = 16, 17, 18, 19
+# the host, with a lease of its own; HUSH may be raised by anyone, and only ever grows. SEEN_TO is
+# for who plays a journal: chunks that the final stage may look at, 0 for all
+OPEN_ASK, OPEN_N, HUSH, HOST_UNTIL, SEEN_TO = 16, 17, 18, 19, 20
 # the final stage
 READ, CALLBACKS, EMPTY, BLOCK, LAST_NS, LONGEST_NS = 24, 25, 26, 27, 28, 29
 SEEN_OPEN, SEEN_HUSH, GATE, EVENTS = 30, 31, 32, 33
 FAULTS, FAULT_FEED, CLIPS, SOUNDED, SCANNED, DRY = 34, 35, 36, 37, 38, 39
 LAST_READ, SEEN_GRANT = 40, 41  # READ at LAST_NS; the newest grant that holds
+SHORT = 42  # SCANNED while less is in the ring than is looked ahead, else 0
 # set once
 FRAMES, CHANNELS, PANELS, RAMP_N, SIZE, START = 48, 49, 50, 51, 52, 53
 HEADER = 64
 
 # kinds of events that the final stage logs, with their sample
-OPENED, HUSHED, LEASE_OVER, WENT_DRY, FAULT, CLIP, HOST_OVER, GRANTED = range(1, 9)
+OPENED, HUSHED, LEASE_OVER, WENT_DRY, FAULT, CLIP, HOST_OVER, GRANTED, WENT_SHORT = range(1, 10)
 EVENT_NAMES = (
-    *("", "opened", "hushed", "lease-over", "dry", "fault", "clip", "host-over", "granted"),
+    *("", "opened", "hushed", "lease-over", "dry"),
+    *("fault", "clip", "host-over", "granted", "short"),
 )
 EVENT_WORDS = 4  # sample, kind, value, spare
 EVENTS_KEPT = 256

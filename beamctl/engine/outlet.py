@@ -148,6 +148,10 @@ class Outlet:
         """Let a ring flow that is not full yet."""
         self.memory[at.FLOWING] = 1
 
+    def see_to(self, chunks: int) -> None:
+        """Look at no chunk from this number on, as a ring that held no more; 0 looks at all."""
+        self.memory[at.SEEN_TO] = chunks
+
     def run_dry(self) -> None:
         """Do at the next frame what a ring that ran dry does to the gate."""
         final.went_dry(self.memory, self.count(at.READ))

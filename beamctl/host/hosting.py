@@ -154,6 +154,8 @@ class Host:
                 self._asked = None
                 args = {"open": int(event.name == "opened"), "n": event.value, "why": event.name}
                 self._write([Record(event.sample, "gate", args=args)])
+            elif event.name == "short":
+                self._write([Record(event.sample, "short", args={"seen": event.value})])
             elif event.name == "dry":
                 self._write([Record(event.sample, "dry", args={"n": event.value})])
             else:

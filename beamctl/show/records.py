@@ -21,6 +21,7 @@ them in at their frame:
     gate    open, n, why                the way out opens or shuts, a ramp of n samples
     dry     n                           the ring ran dry: zeros, then a rise over n samples
     grant   ceilings                    highest drive per panel, in the order of the rig
+    short   seen                        the ring held less than is looked ahead: chunks seen, 0 all
 
 `stream` begins what one engine sent: its sample is the first one's number. `left` ends it. All
 others (`go`, `hush`, `refused`, `output`, `fault` …) tell what was done and by whom.
@@ -34,7 +35,7 @@ from dataclasses import dataclass, field, replace
 from typing import Any
 
 SOUNDING = frozenset(("play", "stop", "level", "depth", "law", "aim", "reach", "freeze", "thaw"))
-FINAL = frozenset(("gate", "dry", "grant"))
+FINAL = frozenset(("gate", "dry", "grant", "short"))
 
 
 @dataclass(frozen=True, slots=True)

@@ -330,7 +330,8 @@ def test_what_was_not_seen_coming_is_cut_off_and_counted() -> None:
     np.testing.assert_allclose(out[10:, 5], -0.1, rtol=1e-6)
     assert largest(out) <= 0.1
     assert outlet.count(at.CLIPS) == 54
-    assert outlet.events()[2:] == [Event(20 * 64 + 10, "clip", 5)]
+    clips = [event for event in outlet.events() if event.name == "clip"]
+    assert clips == [Event(20 * 64 + 10, "clip", 5)]
     assert outlet.count(at.FAULTS) == 0
 
 

@@ -32,8 +32,8 @@ def fresh(ramp_n: int = RAMP_N) -> Outlet:
 
 
 def told(outlet: Outlet) -> list[Event]:
-    """What the gate did; that a grant was taken is not its matter."""
-    return [event for event in outlet.events() if event.name != "granted"]
+    """What the gate did; grants taken and rings that were short are not its matter."""
+    return [event for event in outlet.events() if event.name not in ("granted", "short")]
 
 
 def pull(outlet: Outlet, frames: int, fill: bool = True) -> F32:

@@ -184,8 +184,8 @@ def full(ours: int) -> bool:
 def play_a_little(show: Path, journal: Path) -> None:
     """Open the output and fire the cues, by a line of our own."""
     link = Link(show)
-    for name in ("ready", "confirm"):
-        assert link.act(name).done
+    wait_for(lambda: link.act("ready").done, "a guard that sees")
+    assert link.act("confirm").done
     for ref in ("1", "2", "3"):
         assert link.act("go", ref=ref).done
         now = link.snapshot().engine.rendered
