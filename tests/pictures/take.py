@@ -31,12 +31,11 @@ def play(link: Link) -> None:
     until = time.monotonic() + 120.0
     while time.monotonic() < until:
         try:
-            if link.snapshot().output == "SHUT":
+            if link.act("ready").done:  # open, and the guard sees
                 break
         except OSError:
             pass
         time.sleep(0.1)
-    link.act("ready")
     link.act("confirm")
     for ref in CUES:
         link.act("go", ref=ref)
