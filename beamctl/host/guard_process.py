@@ -39,6 +39,8 @@ from beamctl.show.standing import GUARDED
 LEASE_S = 0.15
 POLL_S = 0.0015
 CLOCK_JUMP_S = 2.0
+RESERVE = (400, 4_000)  # bytes of a block, small enough for an interpreter to find room in them
+BLOCKS = 500
 READING_S, LEVELS_S = 0.05, 0.2
 
 
@@ -58,6 +60,7 @@ def guard_main(connection: Connection, task: GuardTask) -> None:
     sys.setswitchinterval(0.0005)
     threadpool_limits(1)  # its matrix products are small, and the other cores are not its own
     be_ordinary()  # working out the field is in nobody's way
+    reserve = [bytearray(size) for _ in range(BLOCKS) for size in RESERVE]
     try:
         Guard(connection, task).run()
     except BeamctlError as error:
@@ -65,6 +68,7 @@ def guard_main(connection: Connection, task: GuardTask) -> None:
     except (EOFError, OSError):
         pass
     except BaseException as error:
+        reserve.clear()  # room to say why, should it be for want of memory
         _tell(connection, {"blind": f"{type(error).__name__}: {error}".rstrip(": ")})
         raise
 
