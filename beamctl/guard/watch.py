@@ -13,6 +13,7 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
+from beamctl.acoustics.transfer import REFERENCE_PA
 from beamctl.guard.ceilings import Ceilings
 from beamctl.guard.estimator import Estimator, Step, step_length
 from beamctl.guard.field import Field
@@ -27,9 +28,7 @@ NEAR_DB = 3.0
 HELD_DB = 0.25  # a panel held by more is shown, and told
 SHOWN_S = 1.0  # how long CAPPING stands after the last hold
 ALARM = 1e-6  # audible power over the carrier's: -60 dB
-QUIET = (
-    1e-6  # of a full-scale sine on every feed: below it the alarm has no carrier to compare with
-)
+QUIET = 1e-6  # of a full-scale sine on every feed: the least carrier that the alarm compares with
 ALARM_S = 1.0
 NO_SAMPLE = 16.0  # from there on, and what is no number, the final stage sends nothing
 EXCESS_DB = 3.0  # over a cap in spite of its ceilings: then nothing obeys, and it trips
@@ -73,7 +72,7 @@ class Watch:
         return ceilings
 
     def left(self, gains: Array) -> None:
-        """The oldest step went out with these rms gains (panels,)."""
+        """The oldest step went out with these gains (panels,), as `Outlet.gains_left`."""
         step = self._under_way.popleft()
         amplitude = np.tensordot(gains, step.amplitude, 1)
         power = amplitude**2
@@ -123,7 +122,7 @@ class Watch:
         mean = self._windows.mean()
         band = np.argmax(mean, axis=0) if mean.size else np.zeros(0, np.int64)
         place = np.arange(mean.shape[1])
-        cap_db = 20.0 * np.log10(self._estimator.cap_pa[band, place] / 20e-6)
+        cap_db = 20.0 * np.log10(self._estimator.cap_pa[band, place] / REFERENCE_PA)
         with np.errstate(divide="ignore"):
             level_db = cap_db + 10.0 * np.log10(mean[band, place])
         return level_db, band, cap_db

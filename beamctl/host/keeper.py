@@ -12,11 +12,8 @@ import json
 import os
 import subprocess
 import sys
-import threading
 import time
 from collections import deque
-from collections.abc import Callable
-from multiprocessing import get_context
 from multiprocessing.connection import Connection
 from pathlib import Path
 from typing import Any
@@ -24,6 +21,7 @@ from typing import Any
 from beamctl.engine import layout as at
 from beamctl.engine.buffers import SEGMENT
 from beamctl.engine.outlet import Outlet
+from beamctl.host.child import Post, start_child
 from beamctl.host.engine_process import Task, engine_main
 from beamctl.host.link import encode
 from beamctl.host.places import memory_folder, show_key, state_folder
@@ -35,8 +33,6 @@ STALL_S = 0.12  # without a beat of the render thread: then the process is kille
 STARVED_S = 0.5  # … but later where it would run, and only gets no turn
 DEATHS, DEATHS_S = 3, 60.0
 LOOK_S = 2.0
-
-Post = Callable[[dict[str, Any]], None]
 
 
 class Keeper:
@@ -64,8 +60,6 @@ class Keeper:
         start = 0
         if self.outlet is not None:
             start = -(-self.outlet.count(at.WRITTEN) // SEGMENT) * SEGMENT
-        context = get_context("spawn")  # a fresh interpreter: no threads or locks inherited
-        ours, theirs = context.Pipe()
         task = Task(
             self._show.folder,
             self._sink,
@@ -77,19 +71,7 @@ class Keeper:
         )
         self._generation += 1
         self.ready = {}
-        self._process = context.Process(target=engine_main, args=(theirs, task), daemon=True)
-        self._process.start()
-        theirs.close()
-        self._line = ours
-        hear = threading.Thread(target=self._hear, args=(ours, self._generation), daemon=True)
-        hear.start()
-
-    def _hear(self, line: Connection, generation: int) -> None:
-        try:
-            while True:
-                self._post(json.loads(line.recv_bytes()) | {"generation": generation})
-        except (EOFError, OSError):
-            self._post({"gone": True, "generation": generation})
+        self._process, self._line = start_child(engine_main, task, self._generation, self._post)
 
     def is_ours(self, message: dict[str, Any]) -> bool:
         """False for the last words of an engine that was replaced."""

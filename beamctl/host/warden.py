@@ -6,15 +6,12 @@ that. One that stalls is ended after two seconds. Neither opens anything: the le
 
 from __future__ import annotations
 
-import json
-import threading
 import time
 from collections import deque
-from collections.abc import Callable
-from multiprocessing import get_context
 from multiprocessing.connection import Connection
 from typing import Any
 
+from beamctl.host.child import Post, start_child
 from beamctl.host.guard_process import GuardTask, guard_main
 from beamctl.host.link import encode
 from beamctl.host.places import state_folder
@@ -24,8 +21,6 @@ from beamctl.show.show import Show
 STALE_S = 0.5  # without a reading it is blind, the lease long over …
 STALLED_S = 2.0  # … and then it is ended
 DEATHS, DEATHS_S = 3, 60.0
-
-Post = Callable[[dict[str, Any]], None]
 
 
 class Warden:
@@ -46,21 +41,15 @@ class Warden:
 
     def start(self) -> None:
         """Start a guard; it watches nothing before `attach`."""
-        context = get_context("spawn")
-        ours, theirs = context.Pipe()
         log = str(state_folder() / "guard.log")
         check = not self._checked
         dose = [[row[column] for row in self.levels] for column in (3, 4)] if self.levels else []
         task = GuardTask(self._show.folder, self._show.seal, dose, check, log)
         self._generation += 1
         self._ready = False
-        self._process = context.Process(target=guard_main, args=(theirs, task), daemon=True)
-        with ordinarily():
-            self._process.start()
-        theirs.close()
-        self._line = ours
-        hear = threading.Thread(target=self._hear, args=(ours, self._generation), daemon=True)
-        hear.start()
+        self._process, self._line = start_child(
+            guard_main, task, self._generation, self._post, ordinarily()
+        )
         if self._outlet:
             self.attach(self._outlet)
 
@@ -150,13 +139,6 @@ class Warden:
         if len(self._deaths) < DEATHS or now - self._deaths[0] > DEATHS_S:
             self._missing = True
         return news
-
-    def _hear(self, line: Connection, generation: int) -> None:
-        try:
-            while True:
-                self._post(json.loads(line.recv_bytes()) | {"generation": generation})
-        except (EOFError, OSError):
-            self._post({"gone": True, "generation": generation})
 
     def _send(self, message: dict[str, Any]) -> None:
         try:

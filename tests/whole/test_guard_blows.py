@@ -73,8 +73,7 @@ KINDS: dict[str, tuple[Deal, int, tuple[str, ...]]] = {
     "stopped": (stop, HARMLESS, ("the guard's lease ran out: ", "blind: it stalls")),
     "stopped for good": (stop_for_good, DEATHS, ("the guard's lease ran out: ", "blind: it stall")),
     "killed": (kill, DEATHS, ("the guard died",)),
-    # it keeps a reserve to say why, and may die before it can all the same
-    "out of memory": (fill_memory, DEATHS, ("MemoryError", "the guard died")),
+    "out of memory": (fill_memory, DEATHS, ("MemoryError",)),
     "throwing": (make_it_throw, DEATHS, ("OverflowError",)),
 }
 
