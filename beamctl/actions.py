@@ -1,7 +1,8 @@
-"""The one registry of what a person or a show system can do.
+"""The one registry of what a person or a show system can ask of the host.
 
-Keys, the legend, help and the OSC address list all come from `ACTIONS`; a key that is bound
-nowhere else does nothing. `event` is the class that every way of asking makes.
+Keys, the legend, the palette, help and the OSC address list all come from `ACTIONS`, and from the
+desk's own verbs, which are of the same class; a key that is bound nowhere does nothing. `event` is
+the class that every way of asking makes.
 """
 
 from __future__ import annotations
@@ -13,15 +14,22 @@ from beamctl.show import events
 
 @dataclass(frozen=True, slots=True)
 class Action:
-    """One action. `osc` is the address under /beamctl/1, "" where the network may not ask."""
+    """One action.
+
+    event  what it asks of the player; None where it asks something else, or only the desk
+    keys   as the desk calls them; the user's own configuration may bind others
+    on     the screens where its keys work, all of them when there is none
+    osc    the address under /beamctl/1, "" where the network may not ask
+    """
 
     name: str
-    event: type[events.Event]
+    event: type[events.Event] | None
     title: str
     keys: tuple[str, ...]
     help: str
     osc: str = ""
     role: str = ""
+    on: tuple[str, ...] = ()
 
 
 ACTIONS: dict[str, Action] = {
@@ -31,8 +39,9 @@ ACTIONS: dict[str, Action] = {
             "go",
             events.Go,
             "Go",
-            ("enter", "kp_enter"),
-            "Fires the cue standing by. After * it arms or restores instead.",
+            ("enter", "kp_enter", "f9"),
+            "Fires the cue standing by. After * it arms or restores instead. While writing, Enter "
+            "does so on the Desk and the Guard screen only, F9 everywhere.",
             "go",
             "trigger",
         ),
@@ -81,14 +90,14 @@ ACTIONS: dict[str, Action] = {
         Action(
             "next",
             events.Step,
-            "Stand-by on",
+            "Next",
             ("plus", "kp_plus"),
             "Moves stand-by one cue on.",
         ),
         Action(
             "back",
             events.Step,
-            "Stand-by back",
+            "Back",
             ("minus", "kp_minus"),
             "Moves stand-by one cue back.",
         ),
@@ -139,6 +148,34 @@ ACTIONS: dict[str, Action] = {
             "Answer for a house without seats",
             (),
             "A name, journalled: where no seat is declared nothing can be measured.",
+        ),
+        Action(
+            "mode",
+            events.Mode,
+            "Mode",
+            (),
+            "WRITE, WALK or SHOW. The words SHOW and UNLOCK lock and unlock; never by the network.",
+        ),
+        Action(
+            "sound-now",
+            events.SoundNow,
+            "Sound it now",
+            (),
+            "Sounds one act of a cue by itself, at a trim no higher than its own. Never in SHOW.",
+        ),
+        Action(
+            "sound-off",
+            events.SoundOff,
+            "End the try",
+            (),
+            "Ends what Sound it now began.",
+        ),
+        Action(
+            "air",
+            events.SetAir,
+            "Air readings",
+            (),
+            "Temperature, humidity and pressure as they are now; taken up while nothing sounds.",
         ),
     )
 }

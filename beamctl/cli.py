@@ -10,6 +10,7 @@ from beamctl import __version__
 from beamctl.commands.desk import desk
 from beamctl.commands.host import host
 from beamctl.commands.inspect import inspect
+from beamctl.commands.keys import keys
 from beamctl.commands.render import render
 from beamctl.commands.replay import replay
 from beamctl.commands.report import report
@@ -55,5 +56,5 @@ def main() -> None:
     """
 
 
-for command in (desk, host, inspect, render, replay, report, sign, sinks, wirecheck):
+for command in (desk, host, inspect, keys, render, replay, report, sign, sinks, wirecheck):
     main.add_command(command)

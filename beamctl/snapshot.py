@@ -20,7 +20,7 @@ class CueText:
 
 @dataclass(frozen=True, slots=True)
 class SheetView:
-    """The sheet as text; `version` changes with every edit."""
+    """The sheet as text; `version` changes with every edit of any file of the show."""
 
     version: int
     title: str
@@ -110,6 +110,54 @@ class SeatLevel:
 
 
 @dataclass(frozen=True, slots=True)
+class CueLevel:
+    """One cue where it comes nearest to a cap, or farthest over it, along its whole travel.
+
+    beam, fits_db  of a barred cue: its loudest beam there, and the highest trim of it that keeps
+                   every seat to its cap; None when no trim of that beam alone does
+    """
+
+    ref: str
+    seat: str
+    band_hz: float
+    level_db: float
+    cap_db: float
+    at_s: float  # seconds after its GO
+    beam: str = ""
+    fits_db: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class AirView:
+    """The air that beams and guard reckon with."""
+
+    temperature_c: float = 20.0
+    humidity_pct: float = 50.0
+    pressure_kpa: float = 101.325
+    source: str = "house.toml"  # or who gave the reading
+    age_s: float | None = None  # None: from house.toml, not read today
+
+
+@dataclass(frozen=True, slots=True)
+class WireView:
+    """The network side in one line."""
+
+    listen: str = ""  # "127.0.0.1:61740"; "" while nothing listens
+    state: str = "off"
+
+
+@dataclass(frozen=True, slots=True)
+class EditView:
+    """How the edited show stands against the saved one and against what plays."""
+
+    undo: str = ""  # what undo would take back, in words; "" when there is nothing
+    redo: str = ""
+    unsaved: int = 0  # edits since the last save
+    edited: tuple[str, ...] = ()  # references of cues that differ from the saved sheet
+    waits: str = ""  # what is being worked out or waits to be taken up, in words
+
+
+@dataclass(frozen=True, slots=True)
 class Snapshot:
     """Everything at one moment."""
 
@@ -130,6 +178,12 @@ class Snapshot:
     guard: GuardView = GuardView("BLIND", "not started")
     barred: dict[str, str] = field(default_factory=dict)  # cue → why, and the trim that fits
     unvouched: bool = False  # no seat is declared, and nobody has answered for that
+    mode: str = "WRITE"  # WRITE, WALK or SHOW
+    edit: EditView = EditView()
+    looked: int = 0  # changes whenever every cue was looked at anew; see `CueLevel`
+    air: AirView = AirView()
+    wire: WireView = WireView()
+    trying: tuple[str, ...] = ()  # beams that Sound it now sounds
 
 
 @dataclass(frozen=True, slots=True)

@@ -30,10 +30,11 @@ MAY = {
     "signal": {"errors"},
     "engine": {"acoustics", "show", "signal", "errors"},
     "guard": {"acoustics", "show", "errors"},
+    "forecast": {"acoustics", "guard", "show", "errors"},
     "files": {"acoustics", "show", "errors"},
     "sinks": {"errors"},
     "osc": {"actions", "errors", "show", "snapshot"},
-    "desk": {"acoustics", "actions", "caution", "errors", "show", "snapshot"},
+    "desk": {"acoustics", "actions", "caution", "errors", "forecast", "show", "snapshot"},
     "__main__": {"cli"},
 }
 COMPOSE = {"host", "cli", "commands"}

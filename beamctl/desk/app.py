@@ -6,9 +6,7 @@ It owns nothing of the show: killing it, freezing it or losing its terminal chan
 from __future__ import annotations
 
 import os
-import sys
 from collections.abc import Callable
-from functools import partial
 from typing import Any, ClassVar
 
 import platformdirs
@@ -16,26 +14,31 @@ from textual import events
 from textual.app import App
 from textual.screen import Screen
 
-from beamctl.actions import ACTIONS
-from beamctl.desk import keys
-from beamctl.desk.box import Box, box_for
-from beamctl.desk.courier import HUSH, Courier
+from beamctl.desk.box import Box
+from beamctl.desk.courier import Courier
+from beamctl.desk.desk import Cursor, Then
 from beamctl.desk.format import View
-from beamctl.desk.keyguard import SETTLE_S, PasteGuard, RepeatGuard
+from beamctl.desk.hands import HUSH, Hands, Press
+from beamctl.desk.keymap import DEFAULT, Keymap
+from beamctl.desk.lines import Lines
 from beamctl.desk.link import HostLink
-from beamctl.desk.screens import CautionPage, DeskPage, GuardPage, HelpPage, Page
+from beamctl.desk.pages.all import PAGES
+from beamctl.desk.pages.caution import CautionPage
+from beamctl.desk.pages.help import HelpPage
+from beamctl.desk.pages.keytest import KeyTestPage
+from beamctl.desk.pages.page import Page
+from beamctl.desk.registry import EVERYTHING
 from beamctl.desk.stderr import chatter_to_log
 from beamctl.desk.theme import Form, choose_form
+from beamctl.show.edits import Edit
 from beamctl.snapshot import Answer
 
 TICKS_HZ = 20
 STALE_S = 1.0  # a picture older than this is not trusted, whether or not the host is gone
 ANSWER_S = 6.0  # how long an answer stays
-LEAVE_S = 3.0
-WORD_S = 5.0  # after a trip: from * to Enter, as the host counts it from READY to Enter
+SETTLE_S = 0.006  # a pasted run reaches the program in one piece, so this shows it
 READ_S = 2.0  # the caution stands at least so long
-LEVELS_EVERY = 5  # ticks: the Guard screen's levels come at 4 Hz
-PAGES: dict[str, type[Page]] = {"desk": DeskPage, "guard": GuardPage}
+HELPS = ("help", "key-test")  # screens that lie over the one they were called from
 
 
 class DeskApp(App[int], inherit_bindings=False):
@@ -53,191 +56,235 @@ class DeskApp(App[int], inherit_bindings=False):
     """
 
     def __init__(
-        self, courier: Courier, form: Form, on_read: Callable[[], None] | None = None
+        self,
+        courier: Courier,
+        form: Form,
+        on_read: Callable[[], None] | None = None,
+        keymap: Keymap = DEFAULT,
     ) -> None:
         """`on_read`: show the caution first, and call this once somebody closed it."""
         super().__init__(ansi_color=form.colours != "full")
         self.animation_level = "none"
+        self.cursor = Cursor()
+        self.form, self.keymap = form, keymap
         self._courier = courier
-        self._form = form
         self._on_read = on_read
-        self._go_guard, self._paste_guard = RepeatGuard(), PasteGuard()
+        self._hands = Hands(self)
+        self._pages = {name: page(self) for name, page in PAGES.items()}
         self._answer: tuple[str, Answer] | None = None
-        self._answer_until_s = self._leave_until_s = self._word_until_s = 0.0
-        self._readable_from_s = 0.0
-        self._box: Box | None = None
+        self._answer_until_s = self._readable_from_s = 0.0
         self._view: View | None = None
-        self._ticks = 0
 
     def on_mount(self) -> None:
         """Show the desk and start the clock that redraws it."""
-        self.push_screen(DeskPage(self._form))
+        for name, page in self._pages.items():
+            self.install_screen(page, name)
+        self.push_screen("desk")
         if self._on_read is not None:
             self._readable_from_s = self._courier.clock() + READ_S
-            self.push_screen(CautionPage(self._form))
+            self.push_screen(CautionPage(self))
         self.set_interval(1.0 / TICKS_HZ, self._tick)
         self._tick()
 
+    # -- what is typed and pointed at ----------------------------------------------------------
+
     def on_key(self, event: events.Key) -> None:
-        """Turn a key into a request; hush at once, the others once they are known to be typed."""
+        """Hush at once; every other key once it is known to be typed."""
         event.stop()
-        press = keys.Press(keys.name_of(event.key), event.key, event.character or "")
-        if press.name == HUSH:
+        press = Press(event.key, event.character or "", event.time)
+        if self._hands.hushes(press):
             self._courier.post(HUSH)
-            self._word_until_s = 0.0
-            return
-        number = self._paste_guard.count(event.time)
-        if press.counts_once and not self._go_guard.lets(event.time):
-            return
-        self.set_timer(SETTLE_S, partial(self._typed, press, number, self._view))
+            self._hands.hushed()
+        elif (typed := self._hands.takes(press, self._view)) is not None:
+            self.set_timer(SETTLE_S, typed)
 
     def on_paste(self, event: events.Paste) -> None:
         """A paste is nobody's key press."""
         event.stop()
 
-    def _typed(self, press: keys.Press, number: int, seen: View | None) -> None:
-        if not self._paste_guard.holds(number):
-            return
-        if press.name == keys.LEAVE.name:
-            self._leave(seen)
-        elif isinstance(self._top, CautionPage):
-            self._read(press)
-        elif self._box is not None:
-            self._into_box(self._box, press)
-        elif press.name == keys.HELP.name:
-            self._turn_help()
-        elif press.name in PAGES:
-            self._turn_to(PAGES[press.name])
-        elif press.name and not isinstance(self._top, HelpPage):
-            self._ask(press.name, seen)
+    def on_click(self, event: events.Click) -> None:
+        """The page may use the mouse while the show is written; nothing needs it."""
+        view, part = self._writing, event.widget
+        if view is not None and isinstance(part, Lines) and isinstance(self.top, Page):
+            self.top.point(part.id or "", event.x, event.y, view)
 
-    def _ask(self, name: str, seen: View | None) -> None:
-        if seen is None or seen.stale_s is not None:
-            self._tell(name, Answer(False, "", "not sent: no fresh picture of the host"))
-            return
-        now_s = self._courier.clock()
-        if name == "ready" and seen.snapshot.output == "TRIPPED":
-            self._word_until_s = now_s + WORD_S
-            return
-        if name == "go" and (box := box_for(seen.snapshot, now_s < self._word_until_s)):
-            self._box, self._word_until_s = box, 0.0
-            return
-        ask = keys.ask_for(name, seen.snapshot)
-        if ask is None:
-            self._tell(name, Answer(False, "", "nothing stands by"))
-        else:
-            self._courier.post(ask.name, **ask.arguments)
+    def on_mouse_scroll_down(self, event: events.MouseScrollDown) -> None:
+        """One row on."""
+        if self._writing is not None:
+            self.scroll(1)
 
-    def _into_box(self, box: Box, press: keys.Press) -> None:
-        if press.key in keys.ENTERS:
-            self._box = self._send(box)
-        elif press.key == "escape":
-            self._box = None
-        elif press.key == "backspace":
-            self._box = box.without_last()
-        else:
-            self._box = box.with_sign(press.sign)
+    def on_mouse_scroll_up(self, event: events.MouseScrollUp) -> None:
+        """One row back."""
+        if self._writing is not None:
+            self.scroll(-1)
 
-    def _send(self, box: Box) -> Box | None:
-        """Ask for what the box asks for; the box when it must stay open."""
-        ask = box.ask()
-        if ask is None:
-            return box.wrong()
-        if self._view is None or self._view.stale_s is not None:
-            return box.refused("Not sent: no fresh picture of the host.")
-        self._courier.post(ask.name, **ask.arguments)
-        return None
+    @property
+    def _writing(self) -> View | None:
+        """What shows, while it may be edited and no box is open."""
+        view = self._view if self.fresh and self._hands.box is None else None
+        return view if view is not None and view.snapshot.mode != "SHOW" else None
 
-    def _read(self, press: keys.Press) -> None:
-        """Enter closes the caution once it stood for a moment; nothing else does."""
-        if press.key in keys.ENTERS and self._readable and self._on_read is not None:
+    # -- what pages and hands may ask ----------------------------------------------------------
+
+    @property
+    def fresh(self) -> bool:
+        """Whether the picture on the screen may be trusted."""
+        return self._view is not None and self._view.stale_s is None
+
+    def clock(self) -> float:
+        """Seconds, of the courier's clock."""
+        return self._courier.clock()
+
+    @property
+    def top(self) -> Screen[Any] | None:
+        """The page that shows; None while the app goes."""
+        return self.screen_stack[-1] if self.screen_stack else None
+
+    def screen_name(self) -> str:
+        """Name of the page that shows."""
+        return self.top.NAME if isinstance(self.top, Page) else ""
+
+    def ask(self, name: str, /, **arguments: object) -> None:
+        """Ask the host for an action of the registry; the answer is told on the screen."""
+        self._courier.post(name, **arguments)
+
+    def edit(self, edit: Edit, then: Then | None = None) -> None:
+        """Have the show edited; without `then` the answer is told on the screen."""
+        self._courier.edit(edit, then or self._tell_of(edit.label))
+
+    def history(self, what: str) -> None:
+        """ "undo", "redo" or "save"."""
+        self._courier.history(what, self._tell_of(what))
+
+    def open(self, box: Box) -> None:
+        """Show a box; keys go into it until it closes."""
+        self._hands.open(box)
+
+    def tell(self, text: str) -> None:
+        """Say something for a few seconds, where answers are said."""
+        self._show_answer("", Answer(False, "", text))
+
+    def turn_to(self, screen: str) -> None:
+        """Show another screen; help closes when it is asked for again."""
+        now = self.screen_name()
+        if now in HELPS:
+            self.pop_screen()
+        if screen in HELPS and now != screen:
+            if isinstance(page := self._pages[screen], HelpPage):
+                page.about = self.screen_name()
+            self.push_screen(screen)
+        elif screen not in HELPS and self.screen_name() != screen:
+            self.switch_screen(screen)
+        self._tick_page()
+
+    def do_verb(self, name: str, view: View) -> None:
+        """Have the page that shows do one of its verbs."""
+        if isinstance(self.top, Page):
+            self.top.do(name, view)
+
+    def scroll(self, by: int) -> None:
+        """Move what the page shows by so many rows."""
+        if self._view is not None and isinstance(self.top, Page):
+            self.top.scroll(by, self._view)
+
+    def close_caution(self) -> None:
+        """Close the caution if it has stood long enough."""
+        if self._readable and self._on_read is not None:
             self.pop_screen()
             self._on_read()
 
-    @property
-    def _readable(self) -> bool:
-        return self._courier.clock() >= self._readable_from_s
+    def saw_key(self, key: str, sign: str, name: str) -> None:
+        """The key test shows: a key came that is bound to action `name`."""
+        if isinstance(self.top, KeyTestPage):
+            self.top.saw(key, sign, name)
 
-    def _leave(self, seen: View | None) -> None:
-        now_s = self._courier.clock()
-        sounds = seen is not None and seen.snapshot.output == "OPEN"
-        if sounds and now_s >= self._leave_until_s:
-            self._leave_until_s = now_s + LEAVE_S
-        else:
-            self.exit(0)
+    def leave(self) -> None:
+        """Leave; no sound changes by it."""
+        self.exit(0)
 
-    def _turn_help(self) -> None:
-        if isinstance(self._top, HelpPage):
-            self.pop_screen()
-        else:
-            self.push_screen(HelpPage(self._form))
+    def dim(self) -> None:
+        """One step of the dimmer, and from the last one back to the first."""
+        self.form = self.form.dimmed()
+        for page in self._pages.values():
+            page.restyle(self.form)
 
-    def _turn_to(self, page: type[Page]) -> None:
-        if isinstance(self._top, HelpPage):
-            self.pop_screen()
-        if not isinstance(self._top, page):
-            self.switch_screen(page(self._form))
-
-    def _tell(self, name: str, answer: Answer) -> None:
-        self._answer = ACTIONS[name].title, answer
-        self._answer_until_s = self._courier.clock() + ANSWER_S
+    # -- the clock -----------------------------------------------------------------------------
 
     def _tick(self) -> None:
         if not self.is_headless and not os.isatty(0):
             self.exit(0)  # its terminal is gone without a hang-up: it would spin on nothing
             return
         self._courier.ask_picture()
+        for heard in self._courier.news():
+            heard()
         while (news := self._courier.take_answer()) is not None:
-            self._tell(*news)
-        self._ticks += 1
-        self._view, top = self._look(), self._top
-        if isinstance(top, GuardPage) and self._ticks % LEVELS_EVERY == 0:
-            self._courier.ask_levels()
+            self._show_answer(EVERYTHING[news[0]].title, news[1])
+        self._hands.tick()
+        self._courier.want(self.screen_name())
+        self._view = self._look()
+        self._tick_page()
+
+    def _tick_page(self) -> None:
+        top = self.top
         if isinstance(top, CautionPage):
             top.readable = self._readable
         if isinstance(top, Page):
             top.show(self._view, self._courier.picture.gone)
 
     @property
-    def _top(self) -> Screen[Any] | None:
-        """The page that shows; None while the app goes."""
-        return self.screen_stack[-1] if self.screen_stack else None
+    def _readable(self) -> bool:
+        return self._courier.clock() >= self._readable_from_s
+
+    def _tell_of(self, what: str) -> Then:
+        return lambda answer: self._show_answer(what.capitalize(), answer)
+
+    def _show_answer(self, title: str, answer: Answer) -> None:
+        self._answer = title, answer
+        self._answer_until_s = self._courier.clock() + ANSWER_S
 
     def _look(self) -> View | None:
-        picture, now_s = self._courier.picture, self._courier.clock()
+        courier, now_s = self._courier, self._courier.clock()
+        picture = courier.picture
         if picture.snapshot is None or picture.sheet is None:
             return None
         age_s = now_s - picture.at_s
-        levels = self._courier.levels
-        if levels is not None and now_s - levels.at_s > STALE_S:
-            levels = None
+        levels = courier.levels
+        fresh = levels is not None and now_s - levels.at_s <= STALE_S
         return View(
             picture.sheet,
             picture.snapshot,
             stale_s=age_s if picture.gone or age_s > STALE_S else None,
             answer=self._answer if now_s < self._answer_until_s else None,
-            asks_leave=now_s < self._leave_until_s,
-            asks_word=now_s < self._word_until_s,
-            box=self._box,
-            levels=levels.seats if levels is not None else None,
-            dot=self._form.dot,
+            asks_leave=self._hands.asks_leave,
+            asks_word=self._hands.asks_word,
+            box=self._hands.box,
+            levels=levels.seats if levels is not None and fresh else None,
+            draft=courier.draft,
+            cue_levels=courier.cue_levels,
+            log=courier.log,
+            keymap=self.keymap,
+            dot=self.form.dot,
         )
 
 
-def run_desk(link: HostLink, plain: bool = False, on_read: Callable[[], None] | None = None) -> int:
+def run_desk(
+    link: HostLink,
+    plain: bool = False,
+    on_read: Callable[[], None] | None = None,
+    keymap: Keymap = DEFAULT,
+) -> int:
     """Run the desk on this terminal until the operator leaves; 0, or 1 when the desk itself failed.
 
     Leaving, and failing too, changes no sound. `link` is closed at the end. With `on_read` the
     caution is shown first, and `on_read` is called once somebody has closed it.
     """
     courier = Courier(link)
-    app = DeskApp(courier, choose_form(plain, os.environ), on_read)
+    app = DeskApp(courier, choose_form(plain, os.environ), on_read, keymap)
     log = platformdirs.user_log_path("beamctl", appauthor=False) / "desk.log"
     courier.start()
     try:
         with chatter_to_log(log):
-            # Windows floods the input when it is told to leave the mouse alone.
-            app.run(mouse=sys.platform == "win32")
+            app.run()
     finally:
         courier.stop()
     if app.return_code:

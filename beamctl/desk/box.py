@@ -1,38 +1,71 @@
-"""Boxes: what somebody must type before the desk asks for it. Nothing here draws or sends."""
+"""Boxes: what somebody must type or pick before something is asked for. Nothing here draws."""
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 from beamctl.desk.keys import Ask
 from beamctl.snapshot import Snapshot
 
 CLEAR_WORD = "clear"
-LONGEST = 40  # signs that a box takes
+LONGEST = 200  # signs that a box takes
+
+Use = Callable[[str], str]  # takes what was typed or picked; returns why it will not do, or ""
 
 
 @dataclass(frozen=True, slots=True)
 class Box:
-    """A question, what has been typed so far, and what is asked of the host in the end."""
+    """A question, and what has been typed so far.
+
+    wants     what to type, in words
+    action    the action that the text goes to as `argument`; "" where `use` takes it
+    word      the only word it takes; "" takes any text
+    choices   what may be picked; typed letters narrow them, arrows walk through them
+    strict    only a choice will do, and Enter takes the first that matches
+    digits    0 is a digit here and hushes nothing; Insert and F12 still do
+    idle_s    it closes by itself after so long without a key; 0 for never
+    """
 
     title: str
     text: str
-    wants: str  # what to type, in words
-    action: str
-    argument: str
-    word: str = ""  # the only word it takes; "" takes any text
+    wants: str
+    action: str = ""
+    argument: str = ""
+    word: str = ""
+    use: Use | None = None
+    choices: tuple[str, ...] = ()
+    strict: bool = False
+    digits: bool = True
+    idle_s: float = 0.0
     typed: str = ""
     complaint: str = ""
+    picked: int | None = None  # among those that match
 
     def with_sign(self, sign: str) -> Box:
         """After `sign` was typed; what is no single printable sign changes nothing."""
         if len(sign) != 1 or not sign.isprintable() or len(self.typed) >= LONGEST:
             return self
-        return replace(self, typed=self.typed + sign, complaint="")
+        return replace(self, typed=self.typed + sign, complaint="", picked=None)
 
     def without_last(self) -> Box:
         """After the last sign was rubbed out."""
-        return replace(self, typed=self.typed[:-1], complaint="")
+        return replace(self, typed=self.typed[:-1], complaint="", picked=None)
+
+    def emptied(self) -> Box:
+        """After all that was typed was rubbed out."""
+        return replace(self, typed="", complaint="", picked=None)
+
+    def walked(self, by: int) -> Box:
+        """After the pick moved on by `by`; none is picked above the first."""
+        at = (-1 if self.picked is None else self.picked) + by
+        at = min(at, len(self.matching) - 1)
+        return replace(self, picked=at if at >= 0 else None)
+
+    def completed(self) -> Box:
+        """With the picked or the first matching choice typed out, as Tab does."""
+        match = self.matching[self.picked or 0 : (self.picked or 0) + 1]
+        return replace(self, typed=match[0], picked=None, complaint="") if match else self
 
     def refused(self, why: str) -> Box:
         """Open as before, and saying why it did not close."""
@@ -42,9 +75,26 @@ class Box:
         """Empty again: what was typed is not what it wants."""
         return replace(self, typed="", complaint=f"Not sent: it wants {self.wants}.")
 
+    @property
+    def matching(self) -> tuple[str, ...]:
+        """The choices that have every typed word in them; those that begin with the text first."""
+        text = self.typed.casefold()
+        words = text.split()
+        found = [c for c in self.choices if all(word in c.casefold() for word in words)]
+        return tuple(sorted(found, key=lambda choice: not choice.casefold().startswith(text)))
+
+    @property
+    def chosen(self) -> str:
+        """What Enter takes: the picked choice, else the text; "" when a strict box has no match."""
+        if self.picked is not None and self.picked < len(self.matching):
+            return self.matching[self.picked]
+        if self.strict:
+            return self.matching[0] if self.matching else ""
+        return " ".join(self.typed.split())
+
     def ask(self) -> Ask | None:
         """What the typed text asks for; None while it is not what the box wants."""
-        text = " ".join(self.typed.split())
+        text = self.chosen
         if self.word:
             text = self.word if text.casefold() == self.word else ""
         return Ask(self.action, {self.argument: text}) if text else None
@@ -60,6 +110,7 @@ def trip_box(reason: str) -> Box:
         action="clear",
         argument="word",
         word=CLEAR_WORD,
+        digits=False,
     )
 
 
@@ -73,6 +124,7 @@ def vouch_box() -> Box:
         wants="your name",
         action="vouch",
         argument="name",
+        digits=False,
     )
 
 

@@ -13,7 +13,9 @@ from typing import Literal, NamedTuple
 from rich.cells import cell_len, set_cell_size
 
 from beamctl.desk.box import Box
-from beamctl.snapshot import Answer, SeatLevel, SheetView, Snapshot
+from beamctl.desk.keymap import DEFAULT, Keymap
+from beamctl.desk.link import Draft
+from beamctl.snapshot import Answer, CueLevel, SeatLevel, SheetView, Snapshot
 
 Role = Literal[
     "dim", "text", "live", "attention", "alarm", "big", "big-live", "big-attention", "big-alarm"
@@ -43,6 +45,10 @@ class View:
     asks_word: bool = False  # after a trip, the first of the two keys that open the box
     box: Box | None = None
     levels: tuple[SeatLevel, ...] | None = None  # None while none came, or those that did are old
+    draft: Draft | None = None  # the show as edited; None while it has not come
+    cue_levels: tuple[CueLevel, ...] = ()
+    log: tuple[str, ...] = ()
+    keymap: Keymap = DEFAULT
     dot: str = "█"
 
 
@@ -94,6 +100,17 @@ def two_ends(left: Row, right: Row, width: int) -> Row:
     room = width - length(right)
     left = fit(left, max(room - 2, 0))
     return (*left, Span(" " * (room - length(left))), *right)
+
+
+def beside(left: list[Row], right: list[Row], at: int, width: int) -> list[Row]:
+    """Both side by side, as high as the higher: `right` begins at cell `at`."""
+    rows = max(len(left), len(right))
+    left, right = ([*part, *[BLANK] * (rows - len(part))] for part in (left, right))
+    both = []
+    for start, end in zip(left, right, strict=True):
+        start = fit(start, at)
+        both.append(fit((*start, Span(" " * (at - length(start))), *end), width))
+    return both
 
 
 def clock(seconds: float) -> str:

@@ -43,6 +43,11 @@ class Lines(Widget, inherit_bindings=False, can_focus=False):
             self._rows, self._stale = tuple(rows), stale
             self.refresh()
 
+    def restyle(self, form: Form) -> None:
+        """Draw in another form from now on."""
+        self._form = form
+        self.refresh()
+
     def render_line(self, y: int) -> Strip:
         """Row `y` as a strip."""
         row = self._rows[y] if y < len(self._rows) else ()

@@ -7,7 +7,8 @@ the rest. The dim grey is the darkest that keeps 4.5, so that a resting screen l
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from functools import cache
 from typing import Literal
 
 from rich.style import Style
@@ -56,6 +57,10 @@ _NONE: dict[Role, Style] = {
     "big-alarm": Style(bold=True),
 }
 
+DIMS = 3
+_SHARES = (1.0, 0.65, 0.35)  # of the light, at each step; contrast sets the floor
+_FLOOR, _BIG_FLOOR = 4.6, 7.1  # contrast on black that no step goes below
+
 _TABLES: dict[Colours, dict[Role, Style]] = {"full": _FULL, "sixteen": _SIXTEEN, "none": _NONE}
 
 
@@ -65,6 +70,7 @@ class Form:
 
     colours: Colours = "full"
     ascii: bool = False
+    dimmer: int = 0  # steps down, from 0 to DIMS - 1; only full colours can be dimmed
 
     @property
     def dot(self) -> str:
@@ -75,12 +81,41 @@ class Form:
         """The look of `role`; a stale picture keeps its alarms and greys all the rest."""
         if stale and role != "alarm":
             return self._grey(big=role.startswith("big"))
-        return _TABLES[self.colours][role]
+        style = _TABLES[self.colours][role]
+        return (
+            _dimmed(style, role, self.dimmer) if self.dimmer and self.colours == "full" else style
+        )
+
+    def dimmed(self) -> Form:
+        """One step darker, and from the darkest to the brightest."""
+        return replace(self, dimmer=(self.dimmer + 1) % DIMS)
 
     def _grey(self, big: bool) -> Style:
         if big and self.colours == "full":
             return Style(color=_OLD, bgcolor="#000000")
         return _TABLES[self.colours]["dim"]
+
+
+@cache
+def _dimmed(style: Style, role: Role, step: int) -> Style:
+    """The same hue with less light, but for its contrast on black: (L + 0.05) / 0.05 by WCAG 2."""
+    assert style.color is not None
+    parts = [_linear(part / 255) for part in style.color.get_truecolor()]
+    light = sum(w * p for w, p in zip((0.2126, 0.7152, 0.0722), parts, strict=True))
+    least = 0.05 * ((_BIG_FLOOR if role.startswith("big") else _FLOOR) - 1.0)
+    share = min(1.0, max(_SHARES[step], least / light))
+    red, green, blue = (round(255 * _encoded(p * share)) for p in parts)
+    return style + Style(color=f"#{red:02x}{green:02x}{blue:02x}")
+
+
+def _linear(part: float) -> float:
+    """The light of an sRGB component (IEC 61966-2-1)."""
+    return part / 12.92 if part <= 0.04045 else float(((part + 0.055) / 1.055) ** 2.4)
+
+
+def _encoded(light: float) -> float:
+    """The sRGB component of a light."""
+    return 12.92 * light if light <= 0.0031308 else float(1.055 * light ** (1 / 2.4) - 0.055)
 
 
 def choose_form(plain: bool, environ: Mapping[str, str]) -> Form:

@@ -16,7 +16,7 @@ from typing import Any, Generic, TypeVar
 from pydantic import BaseModel, ValidationError
 from pydantic_core import ErrorDetails
 
-from beamctl.files.expected import A_NAME, Expected
+from beamctl.show.expected import A_NAME, Expected
 from beamctl.files.locate import Key, Node, locate
 from beamctl.files.problems import Problem, Source, shown
 

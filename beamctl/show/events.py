@@ -89,3 +89,37 @@ class Vouch(Event):
     """Somebody answers by name for a house without seats, in which nothing can be measured."""
 
     name: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Mode(Event):
+    """Change the mode to WRITE, WALK or SHOW: into SHOW by a word, out of it by one and a name."""
+
+    to: str = ""
+    word: str = ""
+    name: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class SoundNow(Event):
+    """Sound what act number `act` (from 0) of cue `ref` leads to, at `trim_db`, outside any cue."""
+
+    ref: str = ""
+    act: int = 0
+    trim_db: float = -60.0
+
+
+@dataclass(frozen=True, slots=True)
+class SoundOff(Event):
+    """End what `SoundNow` began on a beam, or on all of them when `beam` is empty."""
+
+    beam: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class SetAir(Event):
+    """Air readings as somebody took them."""
+
+    temperature_c: float = 20.0
+    humidity_pct: float = 50.0
+    pressure_kpa: float = 101.325

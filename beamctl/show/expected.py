@@ -8,7 +8,7 @@ from typing import Any
 
 from pydantic import BaseModel
 
-from beamctl.files.locate import Key
+Key = str | int
 
 Schema = dict[str, Any]
 UNITS = {

@@ -4,14 +4,19 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
+from pathlib import Path
 
 import pytest
 
 from beamctl.actions import ACTIONS
 from beamctl.desk.format import View
+from beamctl.desk.link import Draft
+from beamctl.files.reader import load_show
+from beamctl.show.edits import Edit
 from beamctl.snapshot import (
     Answer,
     BeamView,
+    CueLevel,
     CueText,
     EngineView,
     GuardView,
@@ -20,6 +25,8 @@ from beamctl.snapshot import (
     SheetView,
     Snapshot,
 )
+
+NIGHT_TRAM = load_show(Path(__file__).parents[2] / "scenes" / "night-tram")
 
 CUES = (
     CueText("11", "tram bell, stage left", "as the lamp swings"),
@@ -96,6 +103,11 @@ class FakeHost:
         self.gone = False
         self.closed = False
         self.acts: list[tuple[str, dict[str, object]]] = []
+        self.edits: list[Edit] = []
+        self.histories: list[str] = []
+        self.refuses = ""  # what every edit is refused with, while it is not ""
+        self.show = NIGHT_TRAM
+        self.version = 1
 
     def _reach(self) -> None:
         if self.gone:
@@ -115,7 +127,9 @@ class FakeHost:
 
     def act(self, name: str, /, **arguments: object) -> Answer:
         self._reach()
-        ACTIONS[name].event(**arguments)  # only what the event has room for
+        kind = ACTIONS[name].event
+        assert kind is not None
+        kind(**arguments)  # only what the event has room for
         self.acts.append((name, arguments))
         if name == "go" and self.now.output != "OPEN":
             return Answer(False, "not-armed", "press * and then Enter")
@@ -141,6 +155,32 @@ class FakeHost:
         refs = [cue.ref for cue in self.text.cues]
         place = refs.index(self.now.standby) + by
         self.now = replace(self.now, standby=refs[max(0, min(place, len(refs) - 1))])
+
+    def draft(self) -> Draft:
+        self._reach()
+        texts = dict.fromkeys(("sheet.toml", "rig.toml", "house.toml"), "")
+        return Draft(self.version, self.show, texts, texts, tuple(self.show.sounds))
+
+    def cue_levels(self) -> tuple[CueLevel, ...]:
+        self._reach()
+        return (CueLevel("12", "stalls B4", 40_000.0, 96.2, 100.0, 2.1),)
+
+    def log(self, most: int) -> tuple[str, ...]:
+        self._reach()
+        return ("20:04:11  GO 11  desk", "20:04:20  refused busy  cue 11 is running")[-most:]
+
+    def edit(self, edit: Edit) -> Answer:
+        self._reach()
+        self.edits.append(edit)
+        return Answer(False, "bad-type", self.refuses) if self.refuses else Answer(True)
+
+    def history(self, what: str) -> Answer:
+        self._reach()
+        self.histories.append(what)
+        return Answer(True)
+
+    def twin(self) -> FakeHost:
+        return self
 
     def close(self) -> None:
         self.closed = True

@@ -13,11 +13,11 @@ from textual.pilot import Pilot
 
 from beamctl.desk.app import DeskApp
 from beamctl.desk.courier import Courier
-from beamctl.desk.glyphs import draw
-from beamctl.desk.screens import HelpPage
+from beamctl.desk.pages.help import HelpPage
+from beamctl.desk.rows.glyphs import draw
 from beamctl.desk.theme import Form
 
-UNKNOWN = ["a", "z", "space", "escape", "tab", "shift+tab", "up", "pageup", "f5"]
+UNKNOWN = ["a", "z", "space", "escape", "tab", "shift+tab", "up", "pageup", "h"]
 UNKNOWN += ["ctrl+p", "ctrl+z", "ctrl+j"]
 
 

@@ -9,9 +9,9 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from beamctl.desk.box import LONGEST, Box, box_for, trip_box, vouch_box
-from beamctl.desk.boxrows import box_rows
 from beamctl.desk.format import Row, length
 from beamctl.desk.keys import Ask
+from beamctl.desk.rows.box import box_rows
 
 BOXES = [trip_box("14.2 kHz at -48 dB re carrier on panel prow"), vouch_box()]
 
@@ -47,7 +47,7 @@ def test_only_single_printable_signs_are_typed(sign: str) -> None:
 
 
 def test_it_holds_so_many_signs_and_rubs_them_out() -> None:
-    full = typed(vouch_box(), "n" * 100)
+    full = typed(vouch_box(), "n" * (LONGEST + 60))
     assert full.typed == "n" * LONGEST
     assert full.without_last().typed == "n" * (LONGEST - 1)
     assert vouch_box().without_last() == vouch_box()

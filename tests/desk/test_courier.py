@@ -9,7 +9,10 @@ from threading import Event
 
 import pytest
 
-from beamctl.desk.courier import RETRY_S, TOO_LATE_S, Courier, Levels
+from beamctl.desk.courier import TOO_LATE_S, Courier, Levels
+from beamctl.desk.line import RETRY_S
+from beamctl.show.edits import Edit
+from beamctl.snapshot import Answer
 
 
 class Clock:
@@ -159,11 +162,13 @@ def test_brings_levels_when_asked_and_keeps_the_last(host, clock: Clock, courier
     until(lambda: courier.picture.snapshot)
     assert courier.levels is None
     clock.now_s = 104.0
-    courier.ask_levels()
+    courier.want("desk")
+    courier.want("guard")
     until(lambda: courier.levels)
     assert courier.levels == Levels(host.seats, 104.0)
     host.gone = True
-    courier.ask_levels()
+    clock.now_s += 1.0
+    courier.want("guard")
     until(lambda: courier.picture.gone)
     assert courier.levels == Levels(host.seats, 104.0)
 
@@ -172,3 +177,50 @@ def test_an_argument_may_be_called_name(host, courier: Courier) -> None:
     courier.post("vouch", name="Ann")
     answer_of(courier)
     assert host.acts == [("vouch", {"name": "Ann"})]
+
+
+def test_the_draft_comes_when_its_version_changes(host, courier: Courier) -> None:
+    drafts = []
+    plain = host.draft
+    host.draft = lambda: drafts.append(1) or plain()
+    courier.ask_picture()
+    until(lambda: courier.picture.snapshot)
+    courier.want("sheet")
+    until(lambda: courier.draft)
+    courier.want("sheet")
+    host.version = 2
+    host.now = replace(host.now, sheet_version=2)
+    courier.ask_picture()
+    until(lambda: courier.picture.snapshot.sheet_version == 2)
+    courier.want("sheet")
+    until(lambda: courier.draft.version == 2)
+    assert len(drafts) == 2
+
+
+def test_edits_are_heard_of_on_the_screen_s_own_thread(host, courier: Courier) -> None:
+    answers: list = []
+    courier.edit(Edit("nothing", ()), answers.append)
+    courier.history("undo", answers.append)
+    until(lambda: len(host.histories) == 1)
+    assert answers == []
+    until(lambda: [heard() for heard in courier.news()] or len(answers) == 2)
+    assert all(answer.done for answer in answers)
+    assert host.edits == [Edit("nothing", ())]
+
+
+def test_hush_does_not_wait_for_a_slow_edit(host, courier: Courier) -> None:
+    under_way, go_on = Event(), Event()
+
+    def slow(edit):
+        under_way.set()
+        assert go_on.wait(5.0)
+        return Answer(True)
+
+    host.edit = slow
+    courier.edit(Edit("slow", ()), lambda answer: None)
+    assert under_way.wait(5.0)
+    courier.post("hush")
+    try:
+        assert answer_of(courier)[0] == "hush"
+    finally:
+        go_on.set()

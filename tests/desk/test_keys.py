@@ -1,4 +1,4 @@
-"""From keys to requests."""
+"""From actions to requests, and which presses count."""
 
 from __future__ import annotations
 
@@ -7,44 +7,12 @@ from dataclasses import replace
 import pytest
 
 from beamctl.actions import ACTIONS
-from beamctl.desk import keys
-from beamctl.desk.app import PAGES
 from beamctl.desk.keyguard import PASTE_S, PasteGuard, RepeatGuard
-from beamctl.desk.keys import Ask, ask_for, name_of
+from beamctl.desk.keys import Ask, ask_for
 
 
 def seen_of(host, **changes):
     return replace(host.now, **changes)
-
-
-@pytest.mark.parametrize("action", ACTIONS.values(), ids=ACTIONS)
-def test_every_key_of_the_registry_is_bound_to_its_action(action) -> None:
-    assert all(name_of(key) == action.name for key in action.keys)
-
-
-def test_the_desk_takes_no_key_from_the_registry() -> None:
-    taken = {key for action in ACTIONS.values() for key in action.keys}
-    own = [key for row in (keys.HELP, keys.LEAVE, *keys.SCREENS.values()) for key in row.keys]
-    assert taken.isdisjoint(own)
-    assert len(set(own)) == len(own)
-
-
-def test_every_screen_has_a_page_and_a_key_in_the_legend() -> None:
-    assert set(keys.SCREENS) == set(PAGES)
-    assert {("F2", "Desk"), ("F7", "Guard")} <= set(keys.legend())
-
-
-@pytest.mark.parametrize("key", ["space", "escape", "a", "tab", "ctrl+z", "ctrl+p", "ctrl+j", "up"])
-def test_other_keys_ask_nothing(key: str) -> None:
-    assert name_of(key) == ""
-
-
-@pytest.mark.parametrize(
-    ("key", "name"),
-    [("add", "next"), ("subtract", "back"), ("multiply", "ready"), ("decimal", "tail")],
-)
-def test_the_number_pad_by_its_extended_names(key: str, name: str) -> None:
-    assert name_of(key) == name
 
 
 def test_go_names_the_cue_on_the_screen(host) -> None:
@@ -74,7 +42,9 @@ def test_steps(host) -> None:
 def test_the_event_of_every_request_has_room_for_its_arguments(host, name, arming) -> None:
     ask = ask_for(name, seen_of(host, arming=arming))
     assert ask is not None
-    assert ACTIONS[ask.name].event(**ask.arguments)
+    kind = ACTIONS[ask.name].event
+    assert kind is not None
+    assert kind(**ask.arguments)
 
 
 def held(first_s: float, gap_s: float, for_s: float) -> list[float]:

@@ -13,7 +13,7 @@ from pathlib import Path
 
 from support.running import COMMAND, STARTS_S, need, wait_for
 
-from beamctl.desk import glyphs
+from beamctl.desk.rows import glyphs
 
 MODES = (
     "#{cursor_flag} #{alternate_on} #{keypad_flag} #{insert_flag} #{wrap_flag} #{mouse_any_flag}"

@@ -1,4 +1,4 @@
-"""How a box looks: an outline, what it is about, what to type, and how to get out of it."""
+"""How a box looks: an outline, what it is about, what to type or pick, and how to get out of it."""
 
 from __future__ import annotations
 
@@ -6,7 +6,14 @@ from beamctl.desk.box import Box
 from beamctl.desk.format import BLANK, Role, Row, Span, cut, fit, pad, wrap
 
 WIDEST = 100
-_HINT = "Enter sends it. Escape closes the box, nothing else. 0, Insert, F12 hush."
+TALLEST = 16  # rows
+_HINT = "Enter sends it. Escape closes the box, nothing else. Insert and F12 hush"
+
+
+def box_height(box: Box, width: int) -> int:
+    """Rows that a box would like to have."""
+    lines = wrap(box.text, min(width, WIDEST) - 4, TALLEST)
+    return min(len(lines) + len(box.choices) + 4, TALLEST)
 
 
 def box_rows(box: Box, width: int, height: int) -> list[Row]:
@@ -14,13 +21,35 @@ def box_rows(box: Box, width: int, height: int) -> list[Row]:
     wide = min(width, WIDEST)
     room = max(wide - 4, 0)
     typed = Span(f"Type {box.wants}: {box.typed}_", "attention")
-    hint = Span(box.complaint, "attention") if box.complaint else Span(_HINT)
-    about = [Span(line, "text") for line in wrap(box.text, room, max(height - 4, 0))]
-    inner = [*about, typed, hint][-max(height - 2, 1) :]
+    hint = Span(box.complaint, "attention") if box.complaint else Span(_hint(box))
     if height < 4:
         return [(Span(cut(typed.text, width), typed.role),), *[BLANK] * (height - 1)][:height]
+    spare = height - 4
+    choices = _choices(box, min(spare, max(spare - 2, 1))) if box.choices else []
+    about = [Span(line, "text") for line in wrap(box.text, room, spare - len(choices))]
+    inner = [*about, typed, *choices, hint]
     rows = [_edge(f" {box.title} ", wide), *[_line(span, room) for span in inner], _edge("", wide)]
     return [*[fit(row, width) for row in rows], *[BLANK] * (height - len(rows))]
+
+
+def _hint(box: Box) -> str:
+    hush = "." if box.digits else "; 0 does too."
+    pick = " Arrows pick, Tab fills in." if box.choices else ""
+    return _HINT + hush + pick
+
+
+def _choices(box: Box, rows: int) -> list[Span]:
+    """The choices around the picked one; marked by `>`."""
+    matching = box.matching
+    if not matching:
+        return [Span("  nothing matches")][:rows]
+    picked = box.picked if box.picked is not None else (0 if box.strict else -1)
+    first = max(0, min(picked - rows // 2, len(matching) - rows))
+    shown = matching[first : first + rows]
+    return [
+        Span(f"> {text}", "text") if first + n == picked else Span(f"  {text}")
+        for n, text in enumerate(shown)
+    ]
 
 
 def _line(span: Span, room: int) -> Row:

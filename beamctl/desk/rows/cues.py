@@ -13,7 +13,7 @@ MARKS = {
     "done": "[.]",
     "barred": "[!]",
 }
-_ROLES: dict[str, Role] = {
+ROLES: dict[str, Role] = {
     "standing by": "text",
     "running": "live",
     "tailing": "live",
@@ -81,7 +81,7 @@ def cue_row(cue: CueText, seen: Snapshot, width: int) -> Row:
     state = state_of(cue.ref, seen)
     stands = cue.ref == seen.standby
     look = "standing by" if stands and state != "barred" else state
-    role = _ROLES.get(look, "dim")
+    role = ROLES.get(look, "dim")
     words = [word for word in ("stand by" if stands else "", _words(cue, state, seen)) if word]
     head = Span(f"{MARKS.get(look, '[?]')} {pad(cue.ref, 6)} ", role)
     return two_ends((head, Span(cue.title)), (Span(", ".join(words)),), min(width, REACH))

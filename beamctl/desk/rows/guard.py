@@ -18,10 +18,10 @@ from beamctl.desk.format import (
     pad,
     wrap,
 )
-from beamctl.desk.guardline import held_words, is_signed
-from beamctl.desk.parts import flow
-from beamctl.desk.seatplan import KEY, left_db, plan_rows, sign_of, urgency
-from beamctl.desk.sheetrows import MARKS
+from beamctl.desk.rows.cues import MARKS
+from beamctl.desk.rows.guardline import held_words, is_signed
+from beamctl.desk.rows.parts import flow
+from beamctl.desk.rows.seatplan import KEY, left_db, plan_rows, sign_of, urgency
 from beamctl.snapshot import GuardView, SeatLevel
 
 TABLE = 46  # cells of the table of worst seats

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from beamctl.caution import CAUTION_LINE, CAUTION_TEXT
-from beamctl.desk import guardline, keys
 from beamctl.desk.format import (
     BLANK,
     Role,
@@ -19,7 +18,9 @@ from beamctl.desk.format import (
     signed,
     wrap,
 )
-from beamctl.desk.sheetrows import MARKS
+from beamctl.desk.keymap import printed
+from beamctl.desk.rows import guardline
+from beamctl.desk.rows.cues import MARKS
 from beamctl.snapshot import BeamView, PanelView
 
 PEAK_DIFFERS_DEG = 0.1
@@ -136,7 +137,7 @@ def notice_row(view: View | None, width: int, gone: bool = False) -> Row:
     if view.stale_s is not None and not gone:
         spans.append(Span(f"HOST SILENT for {clock(view.stale_s)} s", "alarm"))
     if view.asks_leave:
-        again = keys.legend()[-1][0]
+        again = printed(view.keymap.keys_of("leave"))
         spans.append(Span(f"Leave? Sound goes on. {again} again within 3 s", "attention"))
     notices = view.snapshot.notices
     if notices:
@@ -148,10 +149,9 @@ def notice_row(view: View | None, width: int, gone: bool = False) -> Row:
     return fit(joined or [Span("no notices")], width)
 
 
-def legend_rows(width: int) -> list[Row]:
-    """Every key and what it does, in as many rows as it takes."""
-    entries: list[Row] = [(Span(f"{printed}: {title}"),) for printed, title in keys.legend()]
-    return flow(entries, width)
+def legend_rows(entries: list[tuple[str, str]], width: int) -> list[Row]:
+    """Every (key, title) of `entries`, in as many rows as it takes."""
+    return flow([(Span(f"{keys}: {title}"),) for keys, title in entries], width)
 
 
 def flow(entries: list[Row], width: int) -> list[Row]:
@@ -167,12 +167,14 @@ def flow(entries: list[Row], width: int) -> list[Row]:
     return [fit(r, width) for r in (*rows, row)]
 
 
-def help_rows(width: int, height: int, notices: tuple[str, ...] = ()) -> list[Row]:
-    """The caution, every key with its help, the marks, and all notices in full."""
+def help_rows(
+    helps: list[tuple[str, str, str]], width: int, notices: tuple[str, ...] = ()
+) -> list[Row]:
+    """The caution, every (keys, title, help), the marks, and all notices in full."""
     rows: list[Row] = [(Span(CAUTION_LINE),), BLANK]
-    for printed, title, text in keys.helps():
-        first, *more = wrap(f"{title}: {text}", width - 13, 4)
-        rows.append((Span(pad(printed, 13), "text"), Span(first)))
+    for keys, title, text in helps:
+        first, *more = wrap(f"{title}: {text}", width - 13, 4) or [""]
+        rows.append((Span(pad(keys, 13), "text"), Span(first)))
         rows += [(Span(" " * 13 + line),) for line in more]
     for marks in (MARKS, guardline.MARKS):
         said = "  ".join(f"{mark} {state}" for state, mark in marks.items())
@@ -180,4 +182,4 @@ def help_rows(width: int, height: int, notices: tuple[str, ...] = ()) -> list[Ro
     for number, notice in enumerate(notices, 1):
         rows += [(Span(line, "attention"),) for line in wrap(f"! {number}: {notice}", width, 4)]
     rows += [BLANK, *[(Span(cut(line, width)),) for line in CAUTION_TEXT.splitlines()]]
-    return [fit(row, width) for row in rows[:height]]
+    return [fit(row, width) for row in rows]

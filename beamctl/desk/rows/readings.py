@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 from beamctl.caution import CAUTION_LINE
-from beamctl.desk import glyphs
-from beamctl.desk.format import BLANK, Role, Row, Span, View, clock, cut, fit, length, level, wrap
-from beamctl.desk.guardline import SILENT
+from beamctl.desk.format import BLANK, Role, Row, Span, View, beside, clock, cut, fit, level, wrap
+from beamctl.desk.rows import glyphs
+from beamctl.desk.rows.guardline import SILENT
 from beamctl.snapshot import CueText, GuardView, Snapshot
 
 HEIGHT = 2 * glyphs.ROWS + 1
@@ -31,10 +31,10 @@ _GUARD_ROLE: dict[str, Role] = {
 def readings(view: View, width: int) -> list[Row]:
     """HEIGHT rows: cue standing by and output above, seconds since GO and the guard below."""
     left = width * 11 // 20
-    upper = _beside(_standby(view, left - 2), _output(view, width - left), left)
+    upper = beside(_standby(view, left - 2), _output(view, width - left), left, width)
     left = max(min(left, width - _GUARD_CELLS), 0)
-    lower = _beside(_since_go(view, left - 1), _guard(view, width - left), left)
-    return [fit(row, width) for row in (*upper, between(view), *lower)]
+    lower = beside(_since_go(view, left - 1), _guard(view, width - left), left, width)
+    return [*upper, fit(between(view), width), *lower]
 
 
 def between(view: View) -> Row:
@@ -151,11 +151,3 @@ def _block(
     lines += [_EMPTY] * glyphs.ROWS
     drawn = (row.ljust(wide) for row in glyphs.draw(reading, dot))
     return [(Span(big, role), Span("  "), line) for big, line in zip(drawn, lines, strict=False)]
-
-
-def _beside(left: list[Row], right: list[Row], left_width: int) -> list[Row]:
-    both = []
-    for start, end in zip(left, right, strict=True):
-        start = fit(start, left_width)
-        both.append((*start, Span(" " * (left_width - length(start))), *end))
-    return both

@@ -4,8 +4,6 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from beamctl.desk.readings import HEIGHT
-
 READINGS_FROM = 34  # rows; a shorter Guard screen has the readings in one line
 
 
@@ -20,8 +18,8 @@ class Plan:
 
 
 def plan(height: int, panels: int) -> Plan:
-    """Share out what readings, guard and sink leave of `height` rows, those above notices."""
-    room = height - HEIGHT - 2
+    """Share out what the sink leaves of `height` rows, those between the guard and the notices."""
+    room = height - 1
     gap = 1 if room >= 14 else 0
     room = max(room - 3 * gap, 0)
     panel_rows = min(panels, max(1, room // 8), room)

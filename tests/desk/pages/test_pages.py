@@ -11,8 +11,10 @@ from desk.driving import LIT_SHARE, SIZES, key_at, lit_share, on_desk, strips, t
 from textual.pilot import Pilot
 
 from beamctl.desk.app import READ_S
-from beamctl.desk.glyphs import draw
-from beamctl.desk.screens import CautionPage, DeskPage, GuardPage
+from beamctl.desk.pages.caution import CautionPage
+from beamctl.desk.pages.desk import DeskPage
+from beamctl.desk.pages.guard import GuardPage
+from beamctl.desk.rows.glyphs import draw
 from beamctl.desk.theme import Form
 
 

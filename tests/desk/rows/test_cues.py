@@ -9,7 +9,7 @@ from itertools import combinations
 import pytest
 
 from beamctl.desk.format import View, length
-from beamctl.desk.sheetrows import MARKS, cue_row, sheet_rows, shown
+from beamctl.desk.rows.cues import MARKS, cue_row, sheet_rows, shown
 from beamctl.snapshot import CueText, SheetView
 
 Make = Callable[..., View]

@@ -7,7 +7,7 @@ from itertools import combinations
 
 import pytest
 
-from beamctl.desk.glyphs import ROWS, SIGNS, draw, width_of
+from beamctl.desk.rows.glyphs import ROWS, SIGNS, draw, width_of
 
 
 @pytest.mark.parametrize("sign", sorted(SIGNS))

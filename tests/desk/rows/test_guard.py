@@ -12,7 +12,7 @@ from hypothesis import strategies as st
 
 from beamctl.caution import CAUTION_LINE
 from beamctl.desk.format import Row, View, length
-from beamctl.desk.guardrows import (
+from beamctl.desk.rows.guard import (
     TABLE,
     seat_rows,
     standing_rows,

@@ -11,7 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from beamctl.desk.format import Row, length
-from beamctl.desk.guardline import MARKS, Part, guard_row, squeeze
+from beamctl.desk.rows.guardline import MARKS, Part, guard_row, squeeze
 from beamctl.snapshot import GuardView
 
 NEAR = GuardView(

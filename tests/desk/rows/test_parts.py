@@ -7,10 +7,11 @@ from dataclasses import replace
 
 import pytest
 
-from beamctl.actions import ACTIONS
 from beamctl.caution import CAUTION_LINE, CAUTION_TEXT
 from beamctl.desk.format import Row, View, length
-from beamctl.desk.parts import (
+from beamctl.desk.keymap import DEFAULT
+from beamctl.desk.registry import EVERYTHING
+from beamctl.desk.rows.parts import (
     beam_row,
     beam_rows,
     help_rows,
@@ -20,6 +21,7 @@ from beamctl.desk.parts import (
     panel_rows,
     sink_row,
 )
+from beamctl.desk.verbs.common import HELP, SCREENS
 from beamctl.snapshot import BeamView, PanelView
 
 Make = Callable[..., View]
@@ -162,29 +164,32 @@ def test_leaving_says_that_sound_goes_on(view: Make) -> None:
 
 @pytest.mark.parametrize(("width", "rows"), [(80, 2), (120, 2)])
 def test_the_legend_names_every_action_that_has_a_key(width: int, rows: int) -> None:
-    legend = legend_rows(width)
+    legend = legend_rows(DEFAULT.legend("desk", True), width)
     assert len(legend) == rows
     text = " ".join(text_of(row) for row in legend)
-    for action in ACTIONS.values():
-        assert (f": {action.title}" in text) or not action.keys
+    for name, action in EVERYTHING.items():
+        told = action.keys and not action.on and name not in (HELP.name, *SCREENS)
+        assert (f": {action.title}" in text) or not told
+    assert "F1..F8: Screens" in text
     assert "0/Ins/F12: Hush" in text
     assert all(length(row) <= width for row in legend)
 
 
 def test_help_opens_with_the_caution_and_explains_every_key() -> None:
-    rows = help_rows(200, 60, ("one", "two"))
+    rows = help_rows(DEFAULT.helps("desk", True), 200, ("one", "two"))
     assert text_of(rows[0]) == CAUTION_LINE
     assert rows[0][0].role == "dim"
     text = "\n".join(text_of(row) for row in rows)
-    for action in ACTIONS.values():
-        assert (f"{action.title}: {action.help}" in text) or not action.keys
+    for action in EVERYTHING.values():
+        told = action.keys and not action.on
+        assert (f"{action.title}: {action.help}" in text) or not told
     assert "! 1: one" in text
     assert "! 2: two" in text
     assert CAUTION_TEXT in text
 
 
-def test_every_key_and_mark_is_explained_in_80_by_24() -> None:
-    rows = help_rows(80, 23)
+def test_every_key_and_mark_is_explained_within_80_cells() -> None:
+    rows = help_rows(DEFAULT.helps("desk", True), 80)
     text = "\n".join(text_of(row) for row in rows)
     assert "Leave:" in text
     assert "[!] barred" in text

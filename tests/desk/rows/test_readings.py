@@ -13,8 +13,8 @@ from hypothesis import strategies as st
 from beamctl.caution import CAUTION_LINE
 from beamctl.desk.box import vouch_box
 from beamctl.desk.format import Row, View, length
-from beamctl.desk.glyphs import draw
-from beamctl.desk.readings import HEIGHT, between, readings
+from beamctl.desk.rows.glyphs import draw
+from beamctl.desk.rows.readings import HEIGHT, between, readings
 from beamctl.snapshot import Answer, GuardView
 
 Make = Callable[..., View]

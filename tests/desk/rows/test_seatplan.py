@@ -11,7 +11,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from beamctl.desk.format import Row, length
-from beamctl.desk.seatplan import KEY, plan_rows, sign_of
+from beamctl.desk.rows.seatplan import KEY, plan_rows, sign_of
 from beamctl.snapshot import SeatLevel
 
 SEAT = SeatLevel("stalls A1", "stalls", False, (0.0, 0.0, 1.2), 95.0, 40e3, 100.0, 0.0)

@@ -1,0 +1,1 @@
+"""Pages: what fills the terminal, and what its keys do there."""

@@ -1,0 +1,1 @@
+"""Rows: what stands on the pages, as pure text and roles."""
