@@ -6,12 +6,14 @@ It owns nothing of the show: killing it, freezing it or losing its terminal chan
 from __future__ import annotations
 
 import os
+import sys
 from collections.abc import Callable
 from typing import Any, ClassVar
 
 import platformdirs
 from textual import events
 from textual.app import App
+from textual.driver import Driver
 from textual.screen import Screen
 
 from beamctl.desk.box import Box
@@ -19,7 +21,7 @@ from beamctl.desk.courier import Courier
 from beamctl.desk.desk import Cursor, Then
 from beamctl.desk.format import View
 from beamctl.desk.hands import HUSH, Hands, Press
-from beamctl.desk.keymap import DEFAULT, Keymap
+from beamctl.desk.keymap import DEFAULT, SURE_HUSH, Keymap
 from beamctl.desk.lines import Lines
 from beamctl.desk.link import HostLink
 from beamctl.desk.pages.all import PAGES
@@ -27,6 +29,7 @@ from beamctl.desk.pages.caution import CautionPage
 from beamctl.desk.pages.help import HelpPage
 from beamctl.desk.pages.keytest import KeyTestPage
 from beamctl.desk.pages.page import Page
+from beamctl.desk.quickhush import hushing
 from beamctl.desk.registry import EVERYTHING
 from beamctl.desk.stderr import chatter_to_log
 from beamctl.desk.theme import Form, choose_form
@@ -34,6 +37,7 @@ from beamctl.show.edits import Edit
 from beamctl.snapshot import Answer
 
 TICKS_HZ = 20
+SWITCH_S = 0.001  # between threads: hush must not wait for whoever computes
 STALE_S = 1.0  # a picture older than this is not trusted, whether or not the host is gone
 ANSWER_S = 6.0  # how long an answer stays
 SETTLE_S = 0.006  # a pasted run reaches the program in one piece, so this shows it
@@ -75,6 +79,10 @@ class DeskApp(App[int], inherit_bindings=False):
         self._answer_until_s = self._readable_from_s = 0.0
         self._view: View | None = None
 
+    def get_driver_class(self) -> type[Driver]:
+        """The system's own, but the keys that always hush do so in its reading thread."""
+        return hushing(super().get_driver_class(), lambda: self._courier.post(HUSH))
+
     def on_mount(self) -> None:
         """Show the desk and start the clock that redraws it."""
         for name, page in self._pages.items():
@@ -93,7 +101,8 @@ class DeskApp(App[int], inherit_bindings=False):
         event.stop()
         press = Press(event.key, event.character or "", event.time)
         if self._hands.hushes(press):
-            self._courier.post(HUSH)
+            if self.is_headless or press.key not in SURE_HUSH:  # else it was asked for already
+                self._courier.post(HUSH)
             self._hands.hushed()
         elif (typed := self._hands.takes(press, self._view)) is not None:
             self.set_timer(SETTLE_S, typed)
@@ -281,6 +290,7 @@ def run_desk(
     courier = Courier(link)
     app = DeskApp(courier, choose_form(plain, os.environ), on_read, keymap)
     log = platformdirs.user_log_path("beamctl", appauthor=False) / "desk.log"
+    sys.setswitchinterval(SWITCH_S)
     courier.start()
     try:
         with chatter_to_log(log):

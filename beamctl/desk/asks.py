@@ -93,8 +93,10 @@ def modes(view: View, desk: Desk) -> Box:
 
 def _lock(desk: Desk) -> Box:
     def use(text: str) -> str:
+        if text.casefold() != "show":
+            return "It wants the word show."
         desk.ask("mode", to="SHOW", word=text)
-        return "" if text.casefold() == "show" else "It wants the word show."
+        return ""
 
     return Box("LOCK THE SHOW", MODES["SHOW"].capitalize() + ".", "the word show", use=use)
 

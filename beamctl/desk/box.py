@@ -57,8 +57,9 @@ class Box:
         return replace(self, typed="", complaint="", picked=None)
 
     def walked(self, by: int) -> Box:
-        """After the pick moved on by `by`; none is picked above the first."""
-        at = (-1 if self.picked is None else self.picked) + by
+        """After the pick moved on by `by`; none is picked above the first, unless one must be."""
+        before_first = 0 if self.strict else -1
+        at = (before_first if self.picked is None else self.picked) + by
         at = min(at, len(self.matching) - 1)
         return replace(self, picked=at if at >= 0 else None)
 

@@ -82,6 +82,7 @@ class Hands:
         self.box: Box | None = None
         self._box_until_s: float | None = None
         self._leave_until_s = self._word_until_s = 0.0
+        self._let_go = False  # another key came since the last Enter
 
     # -- what the screen shows of it -----------------------------------------------------------
 
@@ -111,14 +112,18 @@ class Hands:
 
     def takes(self, press: Press, view: View | None) -> Callable[[], None] | None:
         """Count the press; what to do with it once it is known to be typed, None for nothing."""
-        number = self._paste_guard.count(press.at_s)
+        number, soon, let_go = self._paste_guard.count(press.at_s), False, self._let_go
         if press.key in ENTERS or self._name(press.key, view) == "go":
-            fresh = self._go_guard.lets(press.at_s)
-            if not fresh and not (self._go_guard.apart and self._edits(press, view)):
+            soon = not self._go_guard.lets(press.at_s)
+            self._let_go = False
+            if soon and not let_go:
                 return None
+        else:
+            self._let_go = True  # a key stops repeating when another one is pressed
 
         def typed() -> None:
-            if self._paste_guard.holds(number):
+            # Enter soon after Enter may go on in a box, but what closed the box must not fire.
+            if self._paste_guard.holds(number) and (not soon or self._edits(press, view)):
                 self._typed(press, view)
 
         return typed

@@ -20,14 +20,11 @@ class RepeatGuard:
     """Lets a press through once; its repeats keep the guard up for as long as they come."""
 
     def __init__(self) -> None:
-        self._until_s = self._last_s = float("-inf")
-        self.apart = True  # whether the last press came later than a key repeats by itself
+        self._until_s = float("-inf")
 
     def lets(self, at_s: float) -> bool:
         """True when the press at `at_s` is one of its own."""
         fresh = at_s >= self._until_s
-        self.apart = at_s - self._last_s > REPEAT_GAP_S
-        self._last_s = at_s
         self._until_s = at_s + GUARD_S if fresh else max(self._until_s, at_s + REPEAT_GAP_S)
         return fresh
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
 from typing import get_args
 
 import pytest
@@ -10,7 +11,7 @@ from rich.style import Style
 from rich.terminal_theme import TerminalTheme
 
 from beamctl.desk.format import Role
-from beamctl.desk.theme import Form, choose_form
+from beamctl.desk.theme import DIMS, Form, choose_form
 
 ROLES: tuple[Role, ...] = get_args(Role)
 
@@ -44,9 +45,22 @@ def test_the_formula_itself() -> None:
 @pytest.mark.parametrize("stale", [False, True])
 @pytest.mark.parametrize("colours", ["full", "sixteen"])
 @pytest.mark.parametrize("role", ROLES)
-def test_contrast(role: Role, colours, stale: bool) -> None:
+@pytest.mark.parametrize("dimmer", range(DIMS))
+def test_contrast(role: Role, colours, stale: bool, dimmer: int) -> None:
     least = 7.0 if role.startswith("big") else 4.5
-    assert contrast(Form(colours).style(role, stale)) >= least
+    assert contrast(Form(colours, dimmer=dimmer).style(role, stale)) >= least
+
+
+@pytest.mark.parametrize("role", ROLES)
+def test_each_step_of_the_dimmer_is_darker_or_at_its_floor(role: Role) -> None:
+    form, ratios = Form(), []
+    for _ in range(DIMS):
+        ratios.append(contrast(form.style(role)))
+        form = form.dimmed()
+    assert form == Form()
+    least = 7.3 if role.startswith("big") else 4.8
+    for brighter, darker in pairwise(ratios):
+        assert darker < 0.95 * brighter or darker <= min(least, brighter)
 
 
 @pytest.mark.parametrize("role", ROLES)
