@@ -59,7 +59,7 @@ def check_aims(parts: Parts) -> Iterator[Finding]:
         return
     c_m_s = sound_speed_m_s(Air(**house.air.model_dump()))
     throws = {
-        name: _throw(parts.rig.panel[name], cells, c_m_s) for name, cells in parts.cells.items()
+        name: throw_of(parts.rig.panel[name], cells, c_m_s) for name, cells in parts.cells.items()
     }
     seats = house.seats()
     for i, cue in enumerate(parts.sheet.cue):
@@ -150,7 +150,8 @@ def _second_beam(key: str, aim: NDArray[np.float64], throw: Throw) -> Told:
         yield key, f"{what} than this one", True
 
 
-def _throw(spec: PanelSpec, cells: CellMap, c_m_s: float) -> Throw:
+def throw_of(spec: PanelSpec, cells: CellMap, c_m_s: float) -> Throw:
+    """What a panel of these cells can throw at a speed of sound of `c_m_s`."""
     wavelength_m = c_m_s / spec.carrier_hz
     sides_m = np.ptp(cells.at_m[~cells.dead], axis=0) + spec.cell_mm / 1000.0
     lattice, spacing_m = _lattice(spec, cells)

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from math import sqrt
-from typing import Any
+from typing import Any, cast
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from beamctl.show import glides
 from beamctl.show.glides import Row
 from beamctl.show.records import Record
+from beamctl.show.sheet import Law
 
 LAWS = ("dsb", "root", "ssb", "mam")
 DEFAULT_DEPTH = 0.7
@@ -86,9 +87,9 @@ class BeamState:
         """Modulation depth, 0 to 1."""
         return glides.scalar_at(self.depth, sample)
 
-    def law_name(self) -> str:
+    def law_name(self) -> Law:
         """The law the beam has, or is changing to."""
-        return LAWS[int(np.argmax(self.law[:, glides.TO]))]
+        return cast(Law, LAWS[int(np.argmax(self.law[:, glides.TO]))])
 
     def silent(self, sample: int) -> bool:
         """True when the beam is at zero and stays there."""

@@ -11,6 +11,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 Place = tuple[str | int, ...]
+BEGUN = "format = 1\n"  # a file that an edit needs and the folder has not
 
 
 @dataclass(frozen=True, slots=True)

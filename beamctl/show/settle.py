@@ -8,30 +8,18 @@ half-way when played; here it is at the travel's end.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from itertools import groupby
 from math import inf
 
-import numpy as np
-
-from beamctl.show.beamstate import DEFAULT_DEPTH, DEFAULT_TRIM_DB
 from beamctl.show.plan import END_FALL_S, END_PAD_S, SLOWED_S
-from beamctl.show.sheet import Act, Cue, Law, Reach
+from beamctl.show.settled import FRESH, Settled, after_act
+from beamctl.show.sheet import Act
 from beamctl.show.show import Show
 from beamctl.show.targets import Target, target_of
 
-
-@dataclass(frozen=True, slots=True)
-class Settled:
-    """One beam with all its glides at their ends; `target` None is straight ahead."""
-
-    sound: str = ""  # "" when silent
-    trim_db: float = DEFAULT_TRIM_DB
-    depth: float = DEFAULT_DEPTH
-    law: Law = "dsb"
-    reach: Reach = "far"
-    target: Target | None = None
+TargetOf = Callable[[Act], Target | None]
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,7 +41,7 @@ class Moment:
 class _Beam:
     """A beam while the acts of a cue are walked through, in seconds after its GO."""
 
-    now: Settled = Settled()
+    now: Settled = FRESH
     ends_s: float | None = None  # one-shot sounds: when their carrier begins to fall
     left: tuple[tuple[float, Settled], ...] = ()  # (until, state it comes from)
 
@@ -64,10 +52,10 @@ class _Beam:
             self.now, self.ends_s = replace(self.now, sound=""), None
         self.left = tuple((until, state) for until, state in self.left if until > second)
 
-    def take(self, act: Act, show: Show) -> None:
+    def take(self, act: Act, show: Show, target: Target | None) -> None:
         """Do one act at its time."""
         self.at(act.at_s)
-        before, self.now = self.now, _after(self.now, act, show)
+        before, self.now = self.now, after_act(self.now, act, target)
         until = act.at_s + max(act.over_s, act.fall_s or 0.0) + SLOWED_S
         if before.sound and before != self.now:
             self.left += ((until, before),)
@@ -94,10 +82,26 @@ def state_after(show: Show, ref: str) -> dict[str, Settled]:
     last = show.sheet.position(ref) if ref else -1
     beams = {name: _Beam() for name in show.sheet.beam}
     for cue in show.sheet.cue[: last + 1]:
-        for act in _in_time(cue):
-            beams[act.beam].take(act, show)
+        for act in cue.in_time():
+            beams[act.beam].take(act, show, _target(act, show))
         _pass(beams, inf)
     return {name: beam.now for name, beam in beams.items()}
+
+
+def led_to(show: Show, ref: str, act: Act, target: TargetOf) -> tuple[Settled, bool]:
+    """The beam of one act of cue `ref` when that act is given, and whether its sound repeats.
+
+    `target` gives the target of each act that aims: a whole sheet of them is soon asked for.
+    """
+    beam = _Beam()
+    for cue in show.sheet.cue[: show.sheet.position(ref) + 1]:
+        beam.at(inf)
+        for one in cue.in_time():
+            if one.beam == act.beam:
+                beam.take(one, show, target(one))
+            if cue.ref == ref and one is act:
+                break
+    return beam.now, beam.ends_s is None
 
 
 def acts_of(show: Show) -> Iterator[Moment]:
@@ -107,17 +111,13 @@ def acts_of(show: Show) -> Iterator[Moment]:
     """
     beams = {name: _Beam() for name in show.sheet.beam}
     for cue in show.sheet.cue:
-        for at_s, acts in groupby(_in_time(cue), key=lambda act: act.at_s):
+        for at_s, acts in groupby(cue.in_time(), key=lambda act: act.at_s):
             _pass(beams, at_s)
             for act in acts:
-                beams[act.beam].take(act, show)
+                beams[act.beam].take(act, show, _target(act, show))
             leaving = {n: tuple(s for _, s in b.left) for n, b in beams.items() if b.left}
             yield Moment(cue.ref, at_s, {n: b.now for n, b in beams.items()}, leaving)
         _pass(beams, inf)
-
-
-def _in_time(cue: Cue) -> list[Act]:
-    return sorted(cue.act, key=lambda act: act.at_s)
 
 
 def _pass(beams: dict[str, _Beam], second: float) -> None:
@@ -125,23 +125,7 @@ def _pass(beams: dict[str, _Beam], second: float) -> None:
         beam.at(second)
 
 
-def _after(state: Settled, act: Act, show: Show) -> Settled:
-    """What one act makes of a beam, its glides at their ends."""
-    if act.fall_s is not None:
-        return replace(state, sound="")
-    if act.reach is not None:
-        state = replace(state, reach=act.reach)
-    if act.aims:
-        target = target_of(act, show.house, show.rig.panel[show.panel_of(act.beam)])
-        if target.point_m is None and state.reach == "aim":
-            state = replace(state, reach=_distance(state.target))
-        state = replace(state, target=target)
-    named = {key: getattr(act, key) for key in ("sound", "trim_db", "depth", "law")}
-    return replace(state, **{key: value for key, value in named.items() if value is not None})
-
-
-def _distance(target: Target | None) -> Reach:
-    """Where the focus stays when the new target has no distance to follow."""
-    if target is None or target.point_m is None:
-        return "far"
-    return float(np.linalg.norm(target.point_m))
+def _target(act: Act, show: Show) -> Target | None:
+    if not act.aims:
+        return None
+    return target_of(act, show.house, show.rig.panel[show.panel_of(act.beam)])

@@ -84,6 +84,10 @@ class Cue(Model):
     then_at_s: float | None = Field(None, ge=0.0, le=86_400.0)
     act: Annotated[tuple[Act, ...], Field(strict=False)] = ()
 
+    def in_time(self) -> list[Act]:
+        """Its acts as they come; those at one time in the order of the file."""
+        return sorted(self.act, key=lambda act: act.at_s)
+
     @model_validator(mode="after")
     def _follow_on(self) -> Self:
         if (self.then is None) != (self.then_at_s is None):

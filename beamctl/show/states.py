@@ -1,4 +1,4 @@
-"""The two state machines, each one table: what the output may do, and what a cue may do.
+"""The state machines, each one table: what the output may do, what a cue may do, and the modes.
 
 A missing entry is a refusal; `refusal` gives its reason word. Nothing else decides a transition.
 "trip" and "lease-over" are the guard's, "host-over" is a host that stalled. A trip that comes while
@@ -11,6 +11,7 @@ from typing import Literal
 
 Output = Literal["COLD", "SHUT", "OPEN", "HUSHED", "TRIPPED", "LOST"]
 CueState = Literal["resting", "standing by", "running", "tailing", "done", "barred"]
+Mode = Literal["WRITE", "WALK", "SHOW"]
 
 Reason = Literal[
     "not-armed",
@@ -70,6 +71,16 @@ CUE: dict[tuple[CueState, str], CueState] = {
     ("running", "tail"): "tailing",
     ("running", "settled"): "done",
     ("tailing", "settled"): "done",
+}
+
+# From one mode to another: the word that must be typed, "" where none is asked for.
+MODE: dict[tuple[Mode, Mode], str] = {
+    ("WRITE", "WALK"): "",
+    ("WALK", "WRITE"): "",
+    ("WRITE", "SHOW"): "show",
+    ("WALK", "SHOW"): "show",
+    ("SHOW", "WRITE"): "unlock",
+    ("SHOW", "WALK"): "unlock",
 }
 
 

@@ -16,11 +16,15 @@ Triple = tuple[float, float, float]
 
 @dataclass(frozen=True, slots=True)
 class Target:
-    """A point in metres or a unit direction, panel axes (right, out, up), and its words."""
+    """A point in metres or a unit direction, panel axes (right, out, up), and its words.
+
+    A point that is aimed at by way of the surface `via` is the mirror image of the one meant.
+    """
 
     label: str
     point_m: Triple | None = None
     direction: Triple | None = None
+    via: str = ""
 
     def unit(self) -> Triple:
         """Unit direction to the target."""
@@ -48,7 +52,7 @@ def target_of(act: Act, house: House, panel: PanelSpec) -> Target:
         surface = house.surface[act.via]
         label = f"{label} via {act.via}"
         point = _triple(mirror_point(point, surface.corner_m, surface.along_m, surface.up_m))
-    return Target(label, point_m=_triple(to_panel(frame_of(panel), point)))
+    return Target(label, _triple(to_panel(frame_of(panel), point)), via=act.via or "")
 
 
 def _room_point(act: Act, house: House) -> tuple[str, Triple]:

@@ -10,7 +10,8 @@ from support.rigs import make_show
 
 from beamctl.show import events
 from beamctl.show.once import KEPT
-from beamctl.show.player import READY_S, Player
+from beamctl.show.opening import READY_S
+from beamctl.show.player import Player
 from beamctl.show.records import Record
 
 # -- GO and stand-by ----------------------------------------------------------------------------

@@ -10,13 +10,15 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from support.playing import RATE_HZ, at, cue, loop, one_shot
 from support.rigs import make_show
+from support.sheets import sheets
 
 from beamctl.show import events
 from beamctl.show.beamstate import BeamState
 from beamctl.show.player import Player
-from beamctl.show.settle import Moment, Settled, acts_of, state_after
+from beamctl.show.settle import Moment, TargetOf, acts_of, led_to, state_after
+from beamctl.show.settled import Settled
 from beamctl.show.show import Show
-from beamctl.show.targets import Target
+from beamctl.show.targets import Target, target_of
 
 GAP_S = 20.0  # longer than any cue below
 SWING = 1.055  # gain of a rise taken over r before its end: 1 - sin²(π r / 2) + 4/27 π/2 sin(π r)
@@ -126,51 +128,6 @@ def test_what_falls_takes_a_new_aim_along() -> None:
 
 # -- against the player --------------------------------------------------------------------------
 
-whole = st.fixed_dictionaries(
-    {"beam": st.sampled_from("ab"), "at_s": st.sampled_from((0.0, 0.3, 0.9, 1.02, 1.5, 4.0))}
-)
-changes = st.fixed_dictionaries(
-    {},
-    optional={
-        "sound": st.sampled_from(("tone", "other")),
-        "trim_db": st.sampled_from((-10.0, -20.0, -35.0)),
-        "depth": st.sampled_from((0.2, 0.9)),
-        "law": st.sampled_from(("dsb", "ssb", "mam")),
-        "over_s": st.sampled_from((0.0, 0.5, 2.0)),
-    },
-)
-ANGLES: list[dict[str, Any]] = [
-    {"azimuth_deg": 20.0},
-    {"azimuth_deg": -3.0, "elevation_deg": 4.0},
-    {"azimuth_deg": 5.0, "reach": 7.0},
-]
-POINTS: list[dict[str, Any]] = [
-    {"point_m": [1.0, 6.0, 0.5]},
-    {"point_m": [-2.0, 3.0, 0.0], "reach": "aim"},
-    {"reach": "aim"},
-]
-EITHER: list[dict[str, Any]] = [{}, {"reach": 2.0}, {"reach": "far"}]
-
-
-def act(place: dict[str, Any], change: dict[str, Any], aim: dict[str, Any], repeat: bool) -> Any:
-    looped = {"loop": True} if repeat and "sound" in change else {}
-    return place | change | aim | looped
-
-
-def acts_with(aims: list[dict[str, Any]]) -> st.SearchStrategy[list[dict[str, Any]]]:
-    moves = st.builds(act, whole, changes, st.sampled_from([*EITHER, *aims]), st.booleans())
-    falls = st.builds(
-        lambda place, fall_s: place | {"fall_s": fall_s}, whole, st.sampled_from((0.0, 1.5))
-    )
-    return st.lists(st.one_of(moves, falls), max_size=5)
-
-
-# A focus whose travel is cut short by angles stays half-way: the sheet alone cannot tell where,
-# so no cue here mixes the two. Cues that follow one another do.
-sheets = st.lists(acts_with(ANGLES) | acts_with(POINTS), min_size=1, max_size=4).map(
-    lambda cues: [cue(str(i + 1), *acts) for i, acts in enumerate(cues)]
-)
-
 
 def armed(show: Show) -> Player:
     player = Player(show)
@@ -212,6 +169,42 @@ def test_the_state_after_each_cue_is_where_the_player_comes_to_rest(
         for name, settled in state_after(show, one["ref"]).items():
             plan = player.plans[name]
             assert_same(settled, plan.state, plan.sound, rest)
+
+
+@given(sheets)
+@settings(max_examples=40, deadline=None)
+def test_what_one_act_leads_to_is_what_its_moment_has(cues: list[dict[str, Any]]) -> None:
+    show = show_of(*cues)
+    for moment in acts_of(show):
+        acts = show.sheet.cue[show.sheet.position(moment.ref)].in_time()
+        for name, settled in moment.beams.items():
+            given = [a for a in acts if a.beam == name and a.at_s == moment.at_s]
+            if given:
+                assert led_to(show, moment.ref, given[-1], target_in(show))[0] == settled
+
+
+def target_in(show: Show) -> TargetOf:
+    panel = show.rig.panel["p"]
+    return lambda act: target_of(act, show.house, panel) if act.aims else None
+
+
+def test_an_act_leads_to_what_was_given_before_it_and_to_nothing_later() -> None:
+    show = show_of(
+        cue("1", loop(depth=0.3)),
+        cue("2", {"beam": "a", "at_s": 2.0, "depth": 0.9}, {"beam": "a", "trim_db": -30.0}),
+        cue("3", one_shot()),
+        cue("4", {"beam": "a", "depth": 0.1}),
+    )
+    acts = {c.ref: c.act for c in show.sheet.cue}
+    led = {
+        (ref, k): led_to(show, ref, act, target_in(show))
+        for ref, made in acts.items()
+        for k, act in enumerate(made)
+    }
+    assert led["2", 1] == (Settled("tone", -30.0, 0.3), True)
+    assert led["2", 0] == (Settled("tone", -30.0, 0.9), True)
+    assert led["3", 0] == (Settled("tone", -20.0, 0.9), False)
+    assert led["4", 0] == (Settled("", -20.0, 0.1), True)
 
 
 @given(sheets, st.floats(0.0, 1.0))

@@ -1,4 +1,4 @@
-"""The two tables of states: every entry happens in the player, and the manual shows them."""
+"""The tables of states: every entry happens in the player, and the manual shows them."""
 
 from __future__ import annotations
 
@@ -12,11 +12,12 @@ from support.rigs import make_show
 
 from beamctl.show import events
 from beamctl.show.player import Player
-from beamctl.show.states import CUE, OUTPUT, CueState, Output
+from beamctl.show.states import CUE, MODE, OUTPUT, CueState, Mode, Output
 
 MANUAL = Path(__file__).parents[2] / "DEVELOPERS.md"
 OUTPUTS: tuple[Output, ...] = get_args(Output)
 CUE_STATES: tuple[CueState, ...] = get_args(CueState)
+MODES: tuple[Mode, ...] = get_args(Mode)
 
 
 # -- the output ---------------------------------------------------------------------------------
@@ -214,9 +215,14 @@ def table(rows: tuple[str, ...], entries: dict[tuple[str, str], str]) -> str:
     return "\n".join("| " + " | ".join(line) + " |" for line in lines)
 
 
+def word(asked: str) -> str:
+    return f"by the word {asked}" if asked else "freely"
+
+
 TABLES = {
     "output states": table(OUTPUTS, {**OUTPUT}),
     "cue states": table(CUE_STATES, {**CUE}),
+    "modes": table(MODES, {change: word(asked) for change, asked in MODE.items()}),
 }
 
 

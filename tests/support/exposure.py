@@ -12,7 +12,8 @@ from beamctl.acoustics.geometry import meets_rectangle
 from beamctl.acoustics.steering import base_delay_s, cell_delays_s, feed_drive
 from beamctl.acoustics.transfer import REFERENCE_PA, image, transfer
 from beamctl.show.emission import emitters_of
-from beamctl.show.settle import Settled, acts_of
+from beamctl.show.settle import acts_of
+from beamctl.show.settled import Settled
 from beamctl.show.show import Show
 from beamctl.show.targets import Target
 
