@@ -9,6 +9,7 @@ from pathlib import Path
 
 import click
 
+from beamctl.commands.newshow import begin_show, is_new
 from beamctl.commands.options import JOURNAL, SHOW, SINK
 from beamctl.files.reader import load_show
 
@@ -21,6 +22,9 @@ from beamctl.files.reader import load_show
 def desk(show: Path, sink: str, journal: Path | None, plain: bool) -> None:
     """Open the desk on SHOW; starts a host, or joins the one that runs this show.
 
+    Where SHOW is a folder that is missing or empty, it asks four questions and writes a show there
+    that works.
+
     Leaving the desk never changes a sample. A host that this desk started ends with it, unless the
     output is OPEN, HUSHED or TRIPPED: then it runs on, and `beamctl desk` joins it again.
     """
@@ -28,6 +32,8 @@ def desk(show: Path, sink: str, journal: Path | None, plain: bool) -> None:
     from beamctl.desk.app import run_desk
     from beamctl.host.link import Link
 
+    if is_new(show):
+        begin_show(show)
     load_show(show)
     link = Link(show)
     host = None if answers(link) else start_host(show, sink, journal, link)

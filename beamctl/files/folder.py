@@ -51,12 +51,24 @@ class Unreadable(Exception):
 
 def read_text(folder: Path, name: str) -> tuple[str, str]:
     """A text file of the folder and the SHA-256 of its bytes in hex; Unreadable with the reason."""
+    return text_of(read_bytes(folder, name))
+
+
+def read_bytes(folder: Path, name: str) -> bytes:
+    """The bytes of a text file of the folder; Unreadable with the reason."""
     if what := trouble(folder, name):
         raise Unreadable(what)
     try:
-        data = _bytes(folder / name)
+        with (folder / name).open("rb") as file:
+            _check_size(os.fstat(file.fileno()).st_size)
+            return file.read(MOST_BYTES)
     except OSError as error:
         raise Unreadable(_reason(error)) from None
+
+
+def text_of(data: bytes) -> tuple[str, str]:
+    """The text that bytes hold and their SHA-256 in hex; Unreadable with the reason."""
+    _check_size(len(data))
     if b"\0" in data:
         raise Unreadable("holds zero bytes, so it is no text; a power cut while saving leaves such")
     try:
@@ -67,14 +79,11 @@ def read_text(folder: Path, name: str) -> tuple[str, str]:
     return text, sha256(data).hexdigest()
 
 
-def _bytes(path: Path) -> bytes:
-    size = path.stat().st_size
+def _check_size(size: int) -> None:
     if size > MOST_BYTES:
         raise Unreadable(
             f"{size / 1e6:.0f} MB, expected a text of {MOST_BYTES / 1e6:.0f} MB or less"
         )
-    with path.open("rb") as file:
-        return file.read(MOST_BYTES)
 
 
 def _reason(error: OSError | ValueError) -> str:

@@ -1,7 +1,8 @@
 """Where in a TOML text each key stands: a tree of lines that has the shape of the parsed data.
 
 For text that `tomllib` accepts: it finds keys, it does not check them. The standard parser keeps
-no positions, and an error without its line is no help in a long sheet.
+no positions, and an error without its line is no help in a long sheet. Nor can a text be edited
+without them: for that, the places of headers and of the pairs below them are told as offsets.
 """
 
 from __future__ import annotations
@@ -11,6 +12,7 @@ import tomllib
 from bisect import bisect_right
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from typing import NamedTuple
 
 Key = str | int
 _GAP = re.compile(r"(?:[ \t\r\n]|#[^\n]*)*")
@@ -47,16 +49,52 @@ class Node:
         return self.path(location)[-1].line
 
 
+class Header(NamedTuple):
+    """[a.b] or [[a.b]] at text[start:stop]; what comes before it ends at `since`."""
+
+    since: int
+    start: int
+    stop: int
+    keys: tuple[str, ...]
+    many: bool
+
+
+class Pair(NamedTuple):
+    """`key = value` that starts at `start`; its value is text[value:stop]."""
+
+    start: int
+    value: int
+    stop: int
+    keys: tuple[str, ...]
+
+
 def locate(text: str) -> Node:
     """The tree of lines of a TOML text; RecursionError when values nest too deeply."""
     return _Scanner(text).document()
+
+
+def headers(text: str) -> tuple[list[Header], int]:
+    """Every header of a TOML text, and the offset where its last header or pair ends."""
+    scanner = _Scanner(text)
+    scanner.document()
+    return scanner.headers, scanner.done
+
+
+def pairs(text: str) -> list[Pair]:
+    """Every pair of a TOML text, those within values left out."""
+    scanner = _Scanner(text)
+    scanner.document()
+    return scanner.pairs
 
 
 class _Scanner:
     def __init__(self, text: str) -> None:
         self.text = text
         self.at = 0
+        self.done = 0
         self.starts = [0, *(m.end() for m in re.finditer("\n", text))]
+        self.headers: list[Header] = []
+        self.pairs: list[Pair] = []
 
     @property
     def line(self) -> int:
@@ -69,15 +107,17 @@ class _Scanner:
             if self.take("["):
                 table = self.header(root)
             else:
-                self.pair(table)
+                self.pairs.append(self.pair(table))
+            self.done = self.at
             self.skip(_GAP)
         return root
 
     def header(self, root: Node) -> Node:
         """[a.b] or [[a.b]]: the table that the keys below it belong to."""
-        line, many = self.line, self.take("[")
+        start, line, many = self.at - 1, self.line, self.take("[")
         *outer, last = self.keys()
         self.at += 2 if many else 1
+        self.headers.append(Header(self.done, start, self.at, (*outer, last), many))
         table = root
         for name in outer:
             table = _newest(table.child(name, line))
@@ -87,16 +127,20 @@ class _Scanner:
         table.line = line  # a table may come after tables within it
         return table
 
-    def pair(self, table: Node) -> None:
+    def pair(self, table: Node) -> Pair:
         """One `key = value` of a table."""
-        line = self.line
-        for name in self.keys():
+        start, line = self.at, self.line
+        keys = self.keys()
+        for name in keys:
             table = table.child(name, line)
         self.at += 1  # the equals sign
+        self.skip(_GAP)
+        value = self.at
         self.value(table)
+        stop = value + len(self.text[value : self.at].rstrip())
+        return Pair(start, value, stop, tuple(keys))
 
     def value(self, node: Node) -> None:
-        self.skip(_GAP)
         if self.take("["):
             while not self.closed("]"):
                 self.value(node.child(len(node.below), self.line))

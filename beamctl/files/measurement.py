@@ -22,6 +22,7 @@ from beamctl.acoustics.cells import CellMap
 from beamctl.errors import DeviceError, ShowError
 from beamctl.files.folder import Unreadable, read_text
 from beamctl.files.problems import Problem
+from beamctl.files.saving import write
 from beamctl.files.tables import read_table
 from beamctl.show.fields import Model, Name, Text
 from beamctl.show.house import AirSpec
@@ -161,22 +162,11 @@ def write_measurement(folder: Path, measurement: Measurement, report: str) -> Pa
     try:
         (folder / FOLDER).mkdir(exist_ok=True)
         path = next(place for place in places if not place.exists())
-        _keep(path.with_suffix(".txt"), report)
-        _keep(path, _text(measurement))
     except OSError as error:
         reason = os.strerror(error.errno or 0).lower()
         raise DeviceError(f"{folder / FOLDER} cannot be written: {reason}") from error
+    write({path.with_suffix(".txt"): report.encode(), path: _text(measurement).encode()})
     return path
-
-
-def _keep(path: Path, text: str) -> None:
-    """The whole text under its name, or nothing: a power cut leaves no half of it."""
-    part = path.with_name(path.name + ".part")
-    with part.open("w", encoding="utf-8") as file:
-        file.write(text)
-        file.flush()
-        os.fsync(file.fileno())
-    part.replace(path)
 
 
 def _text(measurement: Measurement) -> str:

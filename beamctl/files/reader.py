@@ -1,12 +1,13 @@
 """A show folder into the model. Everything that is wrong with it is told at once.
 
 sheet.toml, rig.toml and house.toml must be there; guard.toml and wire.toml have defaults. Nothing
-in the folder is changed, and whatever it holds, the answer is a list of problems.
+in the folder is changed, and whatever it holds, the answer is a list of problems. Texts that are
+not saved yet may stand in place of files: they are read as the files would be, digests and all.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from functools import partial
 from itertools import chain
 from pathlib import Path
@@ -16,7 +17,7 @@ from pydantic import BaseModel
 
 from beamctl.acoustics.cells import CellMap, cell_map, grid_positions, hex_positions, loom
 from beamctl.errors import ShowError
-from beamctl.files.folder import MISSING, Unreadable, folder_trouble, read_text
+from beamctl.files.folder import MISSING, Unreadable, folder_trouble, read_bytes, text_of
 from beamctl.files.locate import Key
 from beamctl.files.measurement import panel_digest, read_measurement
 from beamctl.files.panel_csv import read_cells
@@ -42,9 +43,14 @@ ABSENT: dict[str, tuple[Severity, str]] = {
 M = TypeVar("M", bound=BaseModel)
 
 
-def read_show(folder: str | Path) -> tuple[Show | None, list[Problem]]:
-    """The show of a folder, None when it has an error, and every problem in the order of lines."""
-    reading = _Reading(Path(folder))
+def read_show(
+    folder: str | Path, texts: Mapping[str, str] | None = None
+) -> tuple[Show | None, list[Problem]]:
+    """The show of a folder, None when it has an error, and every problem in the order of lines.
+
+    texts  file name → what to read in place of that file, a TOML text or a cell list
+    """
+    reading = _Reading(Path(folder), texts or {})
     show = reading.show()
     order = {name: i for i, name in enumerate((SHEET, RIG, HOUSE, GUARD, WIRE))}
     told = dict.fromkeys(reading.problems)  # two panels may share a file
@@ -52,9 +58,9 @@ def read_show(folder: str | Path) -> tuple[Show | None, list[Problem]]:
     return (None if any(p.severity == "error" for p in problems) else show), problems
 
 
-def load_show(folder: str | Path) -> Show:
-    """The show of a folder; ShowError, listing its errors, when it has any."""
-    show, problems = read_show(folder)
+def load_show(folder: str | Path, texts: Mapping[str, str] | None = None) -> Show:
+    """The show of a folder, as `read_show`; ShowError, listing its errors, when it has any."""
+    show, problems = read_show(folder, texts)
     if show is None:
         errors = [str(problem) for problem in problems if problem.severity == "error"]
         count = "1 error" if len(errors) == 1 else f"{len(errors)} errors"
@@ -65,8 +71,9 @@ def load_show(folder: str | Path) -> Show:
 class _Reading:
     """One reading of one folder, and what it found."""
 
-    def __init__(self, folder: Path) -> None:
+    def __init__(self, folder: Path, given: Mapping[str, str]) -> None:
         self.folder = folder
+        self.given = given
         self.problems: list[Problem] = []
         self.digests: dict[str, str] = {}
         self.texts: dict[str, str] = {}
@@ -93,11 +100,19 @@ class _Reading:
         home = str(self.folder.absolute())
         return Show(home, sheet, rig, house, guard, wire, cells, sounds, self.digests, seal)
 
+    def text(self, file: str) -> str:
+        """The text of a file, as given or else as it is in the folder; Unreadable if it is none."""
+        if file in self.given:
+            data = self.given[file].encode()
+        else:
+            data = read_bytes(self.folder, file)
+        text, self.digests[file] = text_of(data)
+        return text
+
     def table(self, file: str, model: type[M]) -> M | None:
         """One TOML file; None when it is not there or nothing can be made of it."""
         try:
-            text, self.digests[file] = read_text(self.folder, file)
-            self.texts[file] = text
+            text = self.texts[file] = self.text(file)
         except Unreadable as error:
             if str(error) != MISSING or file in ABSENT:
                 severity, what = ABSENT[file] if str(error) == MISSING else ("error", str(error))
@@ -124,7 +139,7 @@ class _Reading:
     def against_measured(self, panel: str, spec: PanelSpec, cells: CellMap | None) -> str:
         """Why the panel is not measured by the file it names; "" when it is."""
         try:
-            _, self.digests[spec.measured] = read_text(self.folder, spec.measured)
+            self.text(spec.measured)
             found = read_measurement(self.folder / spec.measured)
         except Unreadable as error:
             return str(error)
@@ -142,7 +157,7 @@ class _Reading:
         """The cell map of a panel whose cells are in a CSV file."""
         file = spec.cells or ""
         try:
-            text, self.digests[file] = read_text(self.folder, file)
+            text = self.text(file)
         except Unreadable as error:
             self.tell(RIG, ("panel", panel, "cells"), f"{shown(file)}: {error}")
             return None

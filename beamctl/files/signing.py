@@ -9,10 +9,7 @@ There is no secret in it: it tells an edit from what was signed, not one person 
 from __future__ import annotations
 
 import json
-import os
 import re
-import shutil
-import tempfile
 import tomllib
 from collections.abc import Mapping
 from contextlib import suppress
@@ -21,8 +18,9 @@ from pathlib import Path
 
 import tomlkit
 
-from beamctl.errors import DeviceError, ShowError
-from beamctl.files.folder import Unreadable, read_text
+from beamctl.errors import ShowError
+from beamctl.files.folder import MISSING, Unreadable, read_bytes, read_text
+from beamctl.files.saving import write
 from beamctl.show.checks import GUARD, HOUSE, RIG
 from beamctl.show.rig import Rig
 
@@ -69,16 +67,13 @@ def sign(folder: Path, by: str, on: str, seal: str) -> None:
         raise ShowError(f"{by!r} is no name to sign with", f"1 to {MOST_LETTERS} letters")
     if seal_of(folder) != seal:
         raise ShowError(f"{folder} was edited while it was being signed", "look again, then sign")
-    path = (folder / GUARD).resolve()
+    path = folder / GUARD
     try:
-        _replace(path, signed_text(path.read_bytes().decode(), by.strip(), on, seal).encode())
-    except FileNotFoundError:
-        raise ShowError(f"{folder / GUARD} is missing", "write one: format = 1") from None
-    except OSError as error:
-        reason = os.strerror(error.errno or 0).lower()
-        raise DeviceError(
-            f"{folder / GUARD} cannot be written: {reason}", "nothing was signed"
-        ) from error
+        before = read_bytes(folder, GUARD).decode()
+    except Unreadable as error:
+        what = "is missing" if str(error) == MISSING else str(error)
+        raise ShowError(f"{path} {what}", "write one: format = 1") from None
+    write({path: signed_text(before, by.strip(), on, seal).encode()}, do="nothing was signed")
 
 
 def signed_text(text: str, by: str, on: str, seal: str) -> str:
@@ -94,25 +89,3 @@ def signed_text(text: str, by: str, on: str, seal: str) -> str:
 
 def _unsigned(text: str) -> str:
     return _SIGNED.sub("", text, count=1)
-
-
-def _replace(path: Path, data: bytes) -> None:
-    """The whole data under the path, or what was there: a power cut leaves nothing between."""
-    handle, name = tempfile.mkstemp(prefix=f".{path.name}-", dir=path.parent)
-    part = Path(name)
-    try:
-        with os.fdopen(handle, "wb") as file:
-            file.write(data)
-            file.flush()
-            os.fsync(file.fileno())
-        shutil.copymode(path, part)
-        part.replace(path)
-    except BaseException:
-        part.unlink(missing_ok=True)
-        raise
-    if os.name == "posix":  # the new name is on the disk too
-        folder = os.open(path.parent, os.O_RDONLY)
-        try:
-            os.fsync(folder)
-        finally:
-            os.close(folder)

@@ -16,9 +16,9 @@ from typing import Any, Generic, TypeVar
 from pydantic import BaseModel, ValidationError
 from pydantic_core import ErrorDetails
 
-from beamctl.show.expected import A_NAME, Expected
 from beamctl.files.locate import Key, Node, locate
 from beamctl.files.problems import Problem, Source, shown
+from beamctl.show.expected import A_NAME, Expected
 
 M = TypeVar("M", bound=BaseModel)
 _PLACE = re.compile(r" \(at (?:line (\d+), column \d+|end of document)\)$")
