@@ -10,6 +10,7 @@ from beamctl.desk.desk import Desk
 from beamctl.desk.format import View
 from beamctl.desk.keymap import RUNS, Keymap, printed
 from beamctl.desk.registry import EVERYTHING
+from beamctl.show.find import find as found
 
 IN_SHOW_S = 4.0  # a box that nobody types in closes by itself while a show runs
 GAP = "  "
@@ -47,12 +48,17 @@ def palette(view: View, screen: str, keymap: Keymap, do: Do) -> Box:
 def find(view: View, desk: Desk) -> Box:
     """Finds a cue: where a show is run it goes on stand-by, elsewhere the cursor goes there."""
     lines = {
-        f"{cue.ref}{GAP}{cue.title}{GAP}{cue.note}".rstrip(): cue.ref for cue in view.sheet.cues
+        cue.ref: f"{cue.ref}{GAP}{cue.title}{GAP}{cue.note}".rstrip() for cue in view.sheet.cues
     }
+    refs = {line: ref for ref, line in lines.items()}
+
+    def search(typed: str) -> tuple[str, ...]:
+        return tuple(lines[ref] for ref in found(view.sheet.cues, typed))
+
     runs = desk.screen_name() in RUNS or view.snapshot.mode == "SHOW"
 
     def use(line: str) -> str:
-        ref = lines.get(line) or next((r for r in lines.values() if r == line), "")
+        ref = refs.get(line, "")
         if not ref:
             return "No cue is found by that."
         if runs:
@@ -63,8 +69,8 @@ def find(view: View, desk: Desk) -> Box:
 
     text = "Enter puts it on stand-by; nothing is fired." if runs else "Enter goes there."
     return Box(
-        "FIND A CUE", text, "its number or words", use=use, choices=tuple(lines), strict=True,
-        idle_s=_idle_s(view),
+        "FIND A CUE", text, "its number or words", use=use, choices=tuple(refs), search=search,
+        strict=True, idle_s=_idle_s(view),
     )  # fmt: skip
 
 

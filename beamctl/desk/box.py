@@ -12,6 +12,7 @@ CLEAR_WORD = "clear"
 LONGEST = 200  # signs that a box takes
 
 Use = Callable[[str], str]  # takes what was typed or picked; returns why it will not do, or ""
+Search = Callable[[str], tuple[str, ...]]  # the choices that what was typed may mean, best first
 
 
 @dataclass(frozen=True, slots=True)
@@ -22,6 +23,7 @@ class Box:
     action    the action that the text goes to as `argument`; "" where `use` takes it
     word      the only word it takes; "" takes any text
     choices   what may be picked; typed letters narrow them, arrows walk through them
+    search    how they do, where it is not by the words in them
     strict    only a choice will do, and Enter takes the first that matches
     digits    0 is a digit here and hushes nothing; Insert and F12 still do
     idle_s    it closes by itself after so long without a key; 0 for never
@@ -35,6 +37,7 @@ class Box:
     word: str = ""
     use: Use | None = None
     choices: tuple[str, ...] = ()
+    search: Search | None = None
     strict: bool = False
     digits: bool = True
     idle_s: float = 0.0
@@ -79,6 +82,8 @@ class Box:
     @property
     def matching(self) -> tuple[str, ...]:
         """The choices that have every typed word in them; those that begin with the text first."""
+        if self.search is not None:
+            return self.search(self.typed)
         text = self.typed.casefold()
         words = text.split()
         found = [c for c in self.choices if all(word in c.casefold() for word in words)]

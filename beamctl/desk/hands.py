@@ -174,6 +174,8 @@ class Hands:
             self._desk.dim()
         elif name in (common.HELP.name, common.KEY_TEST.name, *common.SCREENS):
             self._desk.turn_to(name)
+        elif seen is not None and action.on:
+            self._desk.do_verb(name, seen)
         elif seen is None or seen.stale_s is not None:
             self._desk.tell(f"{action.title}: not sent: no fresh picture of the host")
         elif name == common.PALETTE.name:
@@ -182,8 +184,6 @@ class Hands:
             self.open(asks.find(seen, self._desk))
         elif name == common.SWITCH_MODE.name:
             self.open(asks.modes(seen, self._desk))
-        elif action.on:
-            self._desk.do_verb(name, seen)
         elif action.event is not None:
             self._ask(name, seen)
 

@@ -62,6 +62,12 @@ def test_a_complaint_goes_with_the_next_sign() -> None:
     assert (kept.typed, kept.complaint) == ("Ann", "not now")
 
 
+def test_a_long_complaint_is_told_in_full() -> None:
+    why = "sheet.toml:40 cue[3].act[1].seat: " + " ".join(f"word{n}" for n in range(14))
+    text = " ".join(text_of(box_rows(vouch_box().refused(why), 80, 12)).replace("|", " ").split())
+    assert why in text
+
+
 def test_which_box_enter_opens(host) -> None:
     tripped = replace(host.now, output="TRIPPED")
     unvouched = replace(host.now, output="SHUT", unvouched=True, arming=True)

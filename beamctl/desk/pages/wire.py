@@ -1,21 +1,47 @@
-"""The Wire."""
+"""The Wire: who may speak to the show over the network, and whether anything listens."""
 
 from __future__ import annotations
 
+from typing import ClassVar
+
+from beamctl.desk.box import Box
 from beamctl.desk.format import View
-from beamctl.desk.pages.page import Page, Rows, filled
-from beamctl.desk.rows.guard import status_rows
+from beamctl.desk.forms import read
+from beamctl.desk.pages.page import Rows
+from beamctl.desk.pages.tables import TablesPage
+from beamctl.desk.rows.wire import wire_rows
+from beamctl.desk.tables import ALLOW, WIRE, Allowed, Table, wire_tables
+from beamctl.show.edits import Edit, Set
+from beamctl.show.show import Show
 
 
-class WirePage(Page):
-    """To be built."""
+class WirePage(TablesPage):
+    """wire.toml as tables; what is heard stands below them."""
 
-    NAME = "wire"
+    NAME: ClassVar = "wire"
+    TITLE: ClassVar = "Wire"
+    PICTURED: ClassVar = False
 
-    def head(self, view: View, width: int) -> Rows:
-        """The show in one line."""
-        return status_rows(view, width)
+    def tables(self, show: Show) -> tuple[Table, ...]:
+        """The settings, and the addresses that may speak."""
+        return wire_tables(show)
 
-    def body(self, view: View, width: int, height: int) -> dict[str, Rows]:
-        """Nothing yet."""
-        return {"body": filled([], height)}
+    def foot(self, view: View, table: Table, width: int) -> Rows:
+        """What is heard."""
+        return wire_rows(view.snapshot.wire, width)
+
+    def begin(self, show: Show) -> None:
+        """Ask who else may speak, and what of."""
+
+        def use(text: str) -> str:
+            peer, _, roles = text.partition(" ")
+            try:
+                may = read(Allowed, "roles", roles)
+            except ValueError as error:
+                return str(error)
+            edit = Edit(f"{peer} may {' '.join(may)}", (Set(WIRE, ALLOW, peer, may),))
+            return self.asking.edit(edit, lambda: self.go_to("allow"))
+
+        text = "read: ask and be told. trigger: fire cues. aim: move beams. hush: silence the show."
+        wants = "an address or a network, then its roles"
+        self.asking.open(Box("WHO ELSE MAY SPEAK", text, wants, use=use))

@@ -12,7 +12,8 @@ _HINT = "Enter sends it. Escape closes the box, nothing else. Insert and F12 hus
 
 def box_height(box: Box, width: int) -> int:
     """Rows that a box would like to have."""
-    lines = wrap(box.text, min(width, WIDEST) - 4, TALLEST)
+    room = min(width, WIDEST) - 4
+    lines = [*wrap(box.text, room, TALLEST), *wrap(box.complaint, room, 3)[1:]]
     return min(len(lines) + len(box.choices) + 4, TALLEST)
 
 
@@ -21,13 +22,14 @@ def box_rows(box: Box, width: int, height: int) -> list[Row]:
     wide = min(width, WIDEST)
     room = max(wide - 4, 0)
     typed = Span(f"Type {box.wants}: {box.typed}_", "attention")
-    hint = Span(box.complaint, "attention") if box.complaint else Span(_hint(box))
     if height < 4:
         return [(Span(cut(typed.text, width), typed.role),), *[BLANK] * (height - 1)][:height]
-    spare = height - 4
+    hints = [Span(line, "attention") for line in wrap(box.complaint, room, min(height - 3, 3))]
+    hints = hints or [Span(_hint(box))]
+    spare = height - 3 - len(hints)
     choices = _choices(box, min(spare, max(spare - 2, 1))) if box.choices else []
     about = [Span(line, "text") for line in wrap(box.text, room, spare - len(choices))]
-    inner = [*about, typed, *choices, hint]
+    inner = [*about, typed, *choices, *hints]
     rows = [_edge(f" {box.title} ", wide), *[_line(span, room) for span in inner], _edge("", wide)]
     return [*[fit(row, width) for row in rows], *[BLANK] * (height - len(rows))]
 

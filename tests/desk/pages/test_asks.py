@@ -53,7 +53,7 @@ def test_find_takes_words_and_arrows(host) -> None:
         await until(pilot, lambda: host.acts)
 
     on_desk(host, what, size=(120, 40))
-    assert host.acts == [("standby", {"ref": "12"})]
+    assert host.acts == [("standby", {"ref": "13"})]
 
 
 def test_enter_held_while_the_find_box_closes_fires_nothing(host) -> None:

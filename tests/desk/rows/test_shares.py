@@ -11,7 +11,7 @@ from beamctl.desk.rows.shares import plan
 @pytest.mark.parametrize("panels", [1, 2, 8])
 def test_every_row_is_used_and_none_twice(height: int, panels: int) -> None:
     share = plan(height, panels)
-    used = share.sheet + share.beams + share.panels + 1 + 3 * share.gap
+    used = share.sheet + share.beams + share.panels + share.wire + 1 + 3 * share.gap
     assert used == height
     assert min(share.sheet, share.beams, share.panels) >= 0
 
