@@ -8,6 +8,7 @@ from __future__ import annotations
 import os
 import sys
 from collections.abc import Callable
+from functools import partial
 from typing import Any, ClassVar
 
 import platformdirs
@@ -34,7 +35,7 @@ from beamctl.desk.registry import EVERYTHING
 from beamctl.desk.stderr import chatter_to_log
 from beamctl.desk.theme import Form, choose_form
 from beamctl.show.edits import Edit
-from beamctl.snapshot import Answer
+from beamctl.snapshot import Answer, EditView
 
 TICKS_HZ = 20
 SWITCH_S = 0.001  # between threads: hush must not wait for whoever computes
@@ -105,7 +106,13 @@ class DeskApp(App[int], inherit_bindings=False):
                 self._courier.post(HUSH)
             self._hands.hushed()
         elif (typed := self._hands.takes(press, self._view)) is not None:
-            self.set_timer(SETTLE_S, typed)
+            self.set_timer(SETTLE_S, partial(self._do_and_show, typed))
+
+    def _do_and_show(self, typed: Callable[[], None]) -> None:
+        """What was typed shows at once, not only with the next picture."""
+        typed()
+        self._view = self._look()
+        self._tick_page()
 
     def on_paste(self, event: events.Paste) -> None:
         """A paste is nobody's key press."""
@@ -158,12 +165,22 @@ class DeskApp(App[int], inherit_bindings=False):
         self._courier.post(name, **arguments)
 
     def edit(self, edit: Edit, then: Then | None = None) -> None:
-        """Have the show edited; without `then` the answer is told on the screen."""
-        self._courier.edit(edit, then or self._tell_of(edit.label))
+        """Have the show edited; what was done is told, a refusal goes to `then` if there is one."""
+        tell = self._tell_of(edit.label)
+
+        def heard(answer: Answer) -> None:
+            if answer.done or then is None:
+                tell(answer)
+            if then is not None:
+                then(answer)
+
+        self._courier.edit(edit, heard)
 
     def history(self, what: str) -> None:
-        """ "undo", "redo" or "save"."""
-        self._courier.history(what, self._tell_of(what))
+        """ "undo", "redo" or "save"; told with what it takes back or brings again."""
+        edit = self._view.snapshot.edit if self._view is not None else EditView()
+        label = {"undo": edit.undo, "redo": edit.redo}.get(what, "")
+        self._courier.history(what, self._tell_of(f"{what}: {label}" if label else what))
 
     def open(self, box: Box) -> None:
         """Show a box; keys go into it until it closes."""
@@ -245,7 +262,7 @@ class DeskApp(App[int], inherit_bindings=False):
         return self._courier.clock() >= self._readable_from_s
 
     def _tell_of(self, what: str) -> Then:
-        return lambda answer: self._show_answer(what.capitalize(), answer)
+        return lambda answer: self._show_answer(f"{what[:1].upper()}{what[1:]}", answer)
 
     def _show_answer(self, title: str, answer: Answer) -> None:
         self._answer = title, answer

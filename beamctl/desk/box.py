@@ -27,6 +27,7 @@ class Box:
     strict    only a choice will do, and Enter takes the first that matches
     digits    0 is a digit here and hushes nothing; Insert and F12 still do
     idle_s    it closes by itself after so long without a key; 0 for never
+    prefilled what is typed first takes the place of what stands there
     """
 
     title: str
@@ -41,23 +42,25 @@ class Box:
     strict: bool = False
     digits: bool = True
     idle_s: float = 0.0
+    prefilled: bool = False
     typed: str = ""
     complaint: str = ""
     picked: int | None = None  # among those that match
 
     def with_sign(self, sign: str) -> Box:
         """After `sign` was typed; what is no single printable sign changes nothing."""
-        if len(sign) != 1 or not sign.isprintable() or len(self.typed) >= LONGEST:
+        before = "" if self.prefilled else self.typed
+        if len(sign) != 1 or not sign.isprintable() or len(before) >= LONGEST:
             return self
-        return replace(self, typed=self.typed + sign, complaint="", picked=None)
+        return replace(self, typed=before + sign, complaint="", picked=None, prefilled=False)
 
     def without_last(self) -> Box:
         """After the last sign was rubbed out."""
-        return replace(self, typed=self.typed[:-1], complaint="", picked=None)
+        return replace(self, typed=self.typed[:-1], complaint="", picked=None, prefilled=False)
 
     def emptied(self) -> Box:
         """After all that was typed was rubbed out."""
-        return replace(self, typed="", complaint="", picked=None)
+        return replace(self, typed="", complaint="", picked=None, prefilled=False)
 
     def walked(self, by: int) -> Box:
         """After the pick moved on by `by`; none is picked above the first, unless one must be."""
@@ -69,7 +72,7 @@ class Box:
     def completed(self) -> Box:
         """With the picked or the first matching choice typed out, as Tab does."""
         match = self.matching[self.picked or 0 : (self.picked or 0) + 1]
-        return replace(self, typed=match[0], picked=None, complaint="") if match else self
+        return replace(self, typed=match[0], picked=None, prefilled=False) if match else self
 
     def refused(self, why: str) -> Box:
         """Open as before, and saying why it did not close."""

@@ -47,7 +47,7 @@ class Desk(Protocol):
         ...
 
     def edit(self, edit: Edit, then: Then | None = None) -> None:
-        """Have the show edited; without `then` the answer is told on the screen."""
+        """Have the show edited; what was done is told, a refusal goes to `then` if there is one."""
         ...
 
     def history(self, what: str) -> None:

@@ -54,6 +54,8 @@ class View:
 
 def clean(text: str) -> str:
     """`text` without anything that could move the cursor or colour the screen."""
+    if text.isprintable():
+        return text
     return "".join(sign if sign.isprintable() else "?" for sign in text)
 
 

@@ -24,7 +24,13 @@ UNSET = "--"
 ON_ONE_LINE = (Grid, Hexagon)  # tables short enough to be typed as one value
 
 _NUMBER = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?")
-_AS_TYPED = ((" in quotes", ""), ('"', ""), (" that is not empty", ""), ("a list", "words"))
+_AS_TYPED = (
+    (" in quotes", ""),
+    ('"', ""),
+    (" that is not empty", ""),
+    ("a list", "words"),
+    ("3 numbers, in metres", "x across, y from the stage, z up, in metres"),
+)
 
 Then = Callable[[Any], str]  # takes a value; returns why it will not do, or ""
 
@@ -144,6 +150,7 @@ def field_box(title: str, field: Field, now: Any, then: Then, choices: Sequence[
         choices=names,
         strict=strict,
         typed=typed,
+        prefilled=not isinstance(now, str),
         picked=names.index(told) if told in names else None,
     )
 

@@ -89,7 +89,7 @@ class Keymap:
         for action in own_first:
             if _works(action, screen, writing):
                 for key in self.keys_of(action.name):
-                    if writing and screen not in RUNS and not action.on and key in _FREE_TO_EDIT:
+                    if screen not in RUNS and not action.on and key in _taken(writing):
                         continue
                     table.setdefault(key, action.name)
         return table
@@ -124,6 +124,12 @@ def _clash(one: Action, other: Action, key: str) -> bool:
 def printed(keys: tuple[str, ...] | list[str]) -> str:
     """Keys as they are printed on a keyboard."""
     return "/".join(dict.fromkeys(_label(key) for key in keys if not key.startswith("kp_")))
+
+
+def _taken(writing: bool) -> tuple[str, ...]:
+    """Keys of a show that are none on a screen for writing; Delete, which takes away there, never
+    ends a sound, be the show locked or not."""
+    return _FREE_TO_EDIT if writing else ("delete",)
 
 
 def _works(action: Action, screen: str, writing: bool) -> bool:

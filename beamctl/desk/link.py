@@ -11,9 +11,11 @@ from beamctl.show.show import Show
 from beamctl.snapshot import Answer, CueLevel, SeatLevel, SheetView, Snapshot
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Draft:
     """The show as edited; what it was read from, and what stands on disk.
+
+    One draft is only equal to itself: what was drawn from it is drawn anew when another comes.
 
     texts    file → TOML text as edited
     saved    the same as it was saved last

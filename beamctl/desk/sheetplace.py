@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from beamctl.show.sheet import Act, Cue
+from beamctl.show.sheet import Cue
 
 CUE_FIELDS = ("ref", "title", "note", "then")
 ACT_FIELDS = (
@@ -74,8 +74,3 @@ class Place:
     def at_act(self, act: int, key: str = "") -> Place:
         """On act `act` of the same cue, or on a field of it."""
         return Place(self.cue, len(CUE_FIELDS) + act, ACT_FIELDS.index(key) if key else None)
-
-
-def act_at(place: Place, cues: tuple[Cue, ...]) -> Act | None:
-    """The act under the cursor."""
-    return None if place.act is None or not cues else cues[place.cue].act[place.act]

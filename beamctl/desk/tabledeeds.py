@@ -44,7 +44,16 @@ def rename(asking: Asking, desk: Desk, table: Table, go_to: GoTo) -> None:
         return asking.edit(edit, lambda: go_to(f"{kind} {name}"))
 
     text = "What names it in the sheet follows."
-    asking.open(Box(f"ANOTHER NAME FOR {table.title.upper()}", text, A_NAME, use=use, typed=now))
+    asking.open(
+        Box(
+            f"ANOTHER NAME FOR {table.title.upper()}",
+            text,
+            A_NAME,
+            use=use,
+            typed=now,
+            prefilled=True,
+        )
+    )
 
 
 def take_away(asking: Asking, desk: Desk, table: Table, line: Line | None) -> None:

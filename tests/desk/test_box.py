@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 from beamctl.desk.box import LONGEST, Box, box_for, trip_box, vouch_box
 from beamctl.desk.format import Row, length
 from beamctl.desk.keys import Ask
-from beamctl.desk.rows.box import box_rows
+from beamctl.desk.rows.box import box_height, box_rows
 
 BOXES = [trip_box("14.2 kHz at -48 dB re carrier on panel prow"), vouch_box()]
 
@@ -60,6 +60,24 @@ def test_a_complaint_goes_with_the_next_sign() -> None:
     assert wrong.with_sign("c").complaint == ""
     kept = typed(vouch_box(), "Ann").refused("not now")
     assert (kept.typed, kept.complaint) == ("Ann", "not now")
+
+
+@pytest.mark.parametrize("count", [1, 2, 3, 8])
+@pytest.mark.parametrize("text", ["", "One line of text."])
+def test_every_choice_shows_where_there_is_room(count: int, text: str) -> None:
+    box = Box("PICK", text, "one of them", choices=tuple(f"choice {n}" for n in range(count)))
+    rows = text_of(box_rows(box, 80, box_height(box, 80)))
+    assert all(choice in rows for choice in box.choices)
+    assert text in rows
+
+
+def test_what_is_typed_first_replaces_what_was_filled_in() -> None:
+    box = Box("PLACE", "", "3 numbers", typed="0 0 3", prefilled=True)
+    assert box.with_sign("1").typed == "1"
+    assert box.with_sign("1").with_sign("2").typed == "12"
+    assert box.without_last().with_sign("4").typed == "0 0 4"
+    assert box.chosen == "0 0 3"
+    assert "Typing replaces it" in text_of(box_rows(box, 100, 8))
 
 
 def test_a_long_complaint_is_told_in_full() -> None:

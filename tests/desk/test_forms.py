@@ -53,7 +53,7 @@ def test_a_field_says_what_it_expects_what_may_be_picked_and_whether_it_may_go()
     assert (reach.choices, reach.closed) == (("far", "aim"), False)
     assert field_of(Act, "loop").choices == ("true", "false")
     assert not field_of(Act, "beam").optional
-    assert field_of(Spot, "at_m").expects == "3 numbers, in metres"
+    assert field_of(Spot, "at_m").expects == "x across, y from the stage, z up, in metres"
     assert field_of(PanelSpec, "grid").expects == "3 numbers: columns, rows, pitch_mm"
     assert field_of(PanelSpec, "roll_deg").default == 0.0
 
@@ -124,8 +124,8 @@ def test_what_is_typed_is_read(model: type[BaseModel], key: str, text: str, valu
         (Act, "reach", "-6", "-6: expected a number above 0 or far or aim"),
         (Block, "seats", "8.5", "8.5: expected a whole number from 1 to 500"),
         (Block, "class", "sofa", "sofa: expected seats or crew"),
-        (Spot, "at_m", "0 0", "0 0: expected 3 numbers, in metres"),
-        (Spot, "at_m", "", "it cannot be left out: expected 3 numbers, in metres"),
+        (Spot, "at_m", "0 0", "0 0: expected x across, y from the stage, z up, in metres"),
+        (Spot, "at_m", "", "it cannot be left out: expected x across, y from the stage, z up, in metres"),
         (PanelSpec, "grid", "8 8", "8 8: expected 3 numbers: columns, rows, pitch_mm"),
         (Wire, "listen", "here", 'here: expected "ADDRESS:PORT" with a port from 1 to 65535'),
         (Cue, "ref", "x", 'x: expected a cue reference such as "12", "12.5" or "12A"'),

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from beamctl.desk.pages.bench import BenchPage
+from beamctl.desk.pages.caps import CapsPage
 from beamctl.desk.pages.desk import DeskPage
 from beamctl.desk.pages.guard import GuardPage
 from beamctl.desk.pages.help import HelpPage
@@ -23,6 +24,7 @@ PAGES: dict[str, type[Page]] = {
         HousePage,
         RigPage,
         GuardPage,
+        CapsPage,
         WirePage,
         LogPage,
         HelpPage,

@@ -75,4 +75,4 @@ class HousePage(TablesPage):
         text = "Beams and guard reckon with it once nothing sounds; house.toml stays as it is."
         wants = "temperature in C, humidity in %, pressure in kPa"
         typed = " ".join(written(getattr(now, key)) for key in keys)
-        return Box("THE AIR NOW", text, wants, use=use, typed=typed)
+        return Box("THE AIR NOW", text, wants, use=use, typed=typed, prefilled=True)

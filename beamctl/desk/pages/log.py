@@ -9,8 +9,8 @@ from beamctl.desk.desk import Desk
 from beamctl.desk.format import Row, View
 from beamctl.desk.pages.page import Page, Rows
 from beamctl.desk.rows.guard import status_rows
+from beamctl.desk.rows.heading import heading_row
 from beamctl.desk.rows.log import Window, dropped, line_rows, narrowed, window_rows
-from beamctl.desk.rows.sheetframe import heading_row
 from beamctl.desk.verbs import tables as verbs
 
 FAR = 100_000  # rows; more than there are

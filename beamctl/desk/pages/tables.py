@@ -10,7 +10,7 @@ from beamctl.desk.desk import Desk
 from beamctl.desk.format import Span, View
 from beamctl.desk.pages.page import Page, Rows, filled
 from beamctl.desk.rows.guard import status_rows
-from beamctl.desk.rows.sheetframe import heading_row
+from beamctl.desk.rows.heading import heading_row
 from beamctl.desk.rows.tables import Shares, field_at, field_rows, list_rows, shares, table_at
 from beamctl.desk.tableplace import TablePlace
 from beamctl.desk.tables import Table

@@ -27,7 +27,9 @@ def box_rows(box: Box, width: int, height: int) -> list[Row]:
     hints = [Span(line, "attention") for line in wrap(box.complaint, room, min(height - 3, 3))]
     hints = hints or [Span(_hint(box))]
     spare = height - 3 - len(hints)
-    choices = _choices(box, min(spare, max(spare - 2, 1))) if box.choices else []
+    lines = len(wrap(box.text, room, TALLEST))
+    most = max(spare - lines, (spare + 1) // 2)  # of the rows, at least half are the choices'
+    choices = _choices(box, most) if box.choices else []
     about = [Span(line, "text") for line in wrap(box.text, room, spare - len(choices))]
     inner = [*about, typed, *choices, *hints]
     rows = [_edge(f" {box.title} ", wide), *[_line(span, room) for span in inner], _edge("", wide)]
@@ -37,7 +39,8 @@ def box_rows(box: Box, width: int, height: int) -> list[Row]:
 def _hint(box: Box) -> str:
     hush = "." if box.digits else "; 0 does too."
     pick = " Arrows pick, Tab fills in." if box.choices else ""
-    return _HINT + hush + pick
+    fresh = " Typing replaces it." if box.prefilled and box.typed else ""
+    return _HINT + hush + pick + fresh
 
 
 def _choices(box: Box, rows: int) -> list[Span]:

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from itertools import groupby
+import re
+from collections.abc import Mapping
+from typing import get_args
 
 from numpy.typing import ArrayLike
 
@@ -10,6 +12,11 @@ from beamctl.desk.format import Role, Row, Span, clean
 from beamctl.desk.projection import Cell, Projection
 
 Sign = tuple[str, Role]
+
+# A role as one sign, to find runs of cells by; any other sign is a dim one.
+_CODES: dict[Role, str] = {role: chr(number) for number, role in enumerate(get_args(Role))}
+_ROLES = {code: role for role, code in _CODES.items()}
+_RUNS = re.compile("|".join([*(f"{code}+" for code in _ROLES), f"[^{''.join(_ROLES)}]+"]))
 
 
 class Canvas:
@@ -34,32 +41,45 @@ class Canvas:
         for cell in cells:
             self._signs.setdefault(cell, (sign, role))
 
-    def rows(self, ground: list[str] | None = None, role: Role = "dim") -> list[Row]:
-        """`height` rows; `ground` are as many texts of `width` cells for what nothing was put on."""
-        width, height = self.projection.width, self.projection.height
-        signs = self._signs | {
-            cell: sign for name in self._names for cell, sign in self._written(*name)
-        }
-        found = []
-        for y in range(height):
-            below = ground[y] if ground else " " * width
-            line = [signs.get((x, y), (below[x], role)) for x in range(width)]
-            runs = groupby(line, key=lambda sign: sign[1])
-            found.append(tuple(Span("".join(s for s, _ in run), r) for r, run in runs))
-        return found
+    def under(self, other: Canvas) -> None:
+        """Put all that another canvas of the same projection has under what is here."""
+        self._signs = other._signs | self._signs
+        self._names += other._names
 
-    def _written(self, cell: Cell, name: str, role: Role) -> list[tuple[Cell, Sign]]:
-        """The signs of a name right of its cell or left of it; none where there is no room."""
+    def rows(
+        self, ground: list[str] | None = None, roles: Mapping[str, Role] | None = None
+    ) -> list[Row]:
+        """`height` rows; `ground` are as many texts of `width` cells for what nothing was put on,
+        and `roles` the signs in it that are not dim."""
+        width, height = self.projection.width, self.projection.height
+        codes = {ord(sign): _CODES[role] for sign, role in (roles or {}).items()}
+        texts = [list(text) for text in ground or [" " * width] * height]
+        kinds = [list("".join(text).translate(codes)) for text in texts]
+        signs = dict(self._signs)
+        for name in self._names:
+            self._write(signs, *name)
+        for (x, y), (sign, role) in signs.items():
+            texts[y][x], kinds[y][x] = sign, _CODES[role]
+        return [_row("".join(text), "".join(kind)) for text, kind in zip(texts, kinds, strict=True)]
+
+    def _write(self, signs: dict[Cell, Sign], cell: Cell, name: str, role: Role) -> None:
+        """Write a name right of its cell or left of it, unless there is no room for it."""
         column, row = cell
         for first in (column + 2, column - 1 - len(name)):
-            taken = [(x, row) for x in range(first - 1, first + len(name) + 1) if x != column]
-            if first >= 0 and first + len(name) <= self.projection.width:
-                if any(there in self._signs for there in taken):
-                    continue
-                written = [((first + n, row), (sign, role)) for n, sign in enumerate(name)]
-                self._signs.update(written)
-                return written
-        return []
+            cells = [(first + n, row) for n in range(len(name))]
+            beside = [(first - 1, row), (first + len(name), row)]
+            free = all(there not in signs for there in (*cells, *beside) if there != cell)
+            if free and all(map(self.projection.shows, cells)):
+                signs.update(zip(cells, ((sign, role) for sign in name), strict=True))
+                return
+
+
+def _row(text: str, kinds: str) -> Row:
+    """A row of spans, one for every run of cells of one role."""
+    return tuple(
+        Span(text[run.start() : run.end()], _ROLES.get(run[0][0], "dim"))
+        for run in _RUNS.finditer(kinds)
+    )
 
 
 def _slope(a: Cell, b: Cell) -> str:

@@ -104,7 +104,7 @@ def _heading(view: View, width: int) -> Row:
     place = (
         f"cue {refs.index(view.snapshot.standby) + 1} of {len(refs)}, "
         if (view.snapshot.standby in refs)
-        else f"{len(refs)} cues, "
+        else f"{len(refs)} cue{'' if len(refs) == 1 else 's'}, "
     )
     heard = f"running {' '.join(sounding)}" if sounding else "none running"
     return two_ends((Span(view.sheet.title),), (Span(place + heard),), min(width, REACH))

@@ -121,7 +121,7 @@ def _answer(view: View) -> list[Span]:
     if answer.done:
         return [Span(f"{title}: {answer.text or 'done'}")]
     if not answer.reason:
-        return [Span(f"{title}: {answer.text}", "attention")]
+        return [Span(": ".join(part for part in (title, answer.text) if part), "attention")]
     why = f"{answer.reason}, {answer.text}" if answer.text else answer.reason
     return [Span(f"{title} REFUSED: {why}", "attention")]
 

@@ -12,7 +12,7 @@ from beamctl.snapshot import SeatLevel
 
 REACHED, MORE, SILENT = "!", "o", "."
 WITHIN_DB = ((3.0, "3"), (6.0, "6"), (10.0, "X"))  # dB left to the cap, at most → sign
-_ROLES: dict[str, Role] = {REACHED: "alarm", "3": "attention", "6": "text"}
+ROLES: dict[str, Role] = {REACHED: "alarm", "3": "attention", "6": "text"}
 KEY = f"{REACHED} cap reached   3 6 X within 3, 6, 10 dB of it   {MORE} more left   {SILENT} silent"
 _CELLS_PER_M, _ROWS_PER_M = 8.0, 4.0  # at most; a cell is about twice as high as it is wide
 
@@ -76,5 +76,5 @@ def _even(per_m: float, all_m: list[float]) -> float:
 
 def _row(signs: dict[tuple[int, int], str], y: int, width: int) -> Row:
     line = [signs.get((x, y), " ") for x in range(width)]
-    runs = groupby(line, key=lambda sign: _ROLES.get(sign, "dim"))
+    runs = groupby(line, key=lambda sign: ROLES.get(sign, "dim"))
     return fit([Span("".join(run), role) for role, run in runs], width)

@@ -7,14 +7,14 @@ from typing import NamedTuple
 
 from beamctl.desk.format import BLANK, Role, Row, Span, fit, pad, wrap
 from beamctl.desk.rows.sheetfields import Told, act_fields, cue_fields
-from beamctl.desk.rows.sheetlist import AT, LIFTED
+from beamctl.desk.rows.sheetlist import AT, LIFTED, kept_in
 from beamctl.desk.rows.sheetwords import found_words, sentence
 from beamctl.desk.sheetplace import CUE_FIELDS, Place
 from beamctl.show.sheet import Act, Cue
 from beamctl.snapshot import CueLevel
 
 _MOST = 40  # rows of one text
-_KEY, _NOW = 10, 20  # cells
+_KEY, _NOW = 10, 16  # cells
 
 
 class Line(NamedTuple):
@@ -26,10 +26,16 @@ class Line(NamedTuple):
 
 
 class Found(NamedTuple):
-    """What the guard found for one cue; `barred` is why, and the trim that fits."""
+    """What was found when one cue was looked at.
+
+    level    by the guard
+    barred   why, and the trim that fits
+    remarks  of the reader
+    """
 
     level: CueLevel | None = None
     barred: str = ""
+    remarks: tuple[str, ...] = ()
 
 
 def cue_lines(
@@ -41,13 +47,29 @@ def cue_lines(
         for number, told in enumerate(cue_fields(cue))
         for line in _field_lines(told, number, place.line == number, width)
     ]
-    lines += [Line(row) for row in _guard_rows(found, width)]
+    lines += [Line(row) for row in _found_rows(found, width)]
     lines.append(Line(BLANK))
     if not cue.act:
-        lines.append(Line(fit((Span("  no act yet: nothing changes when this cue goes"),), width)))
+        lines.append(Line(fit((Span("  no act yet: New act begins one"),), width)))
     for number, act in enumerate(cue.act):
         lines += _act_lines(act, number, place, number in lifted, width)
     return lines
+
+
+def top_of(lines: list[Line], place: Place, top: int, height: int) -> int:
+    """The first row that shows, so that what the cursor is on is among `height` of them.
+
+    With a field of an act its sentence shows as well, where there is room for both.
+    """
+    at = [n for n, line in enumerate(lines) if line.line == place.line]
+    if place.line is None or not at:
+        return 0
+    first, last = max(at[0] - 1, 0), min(at[-1] + 1, len(lines) - 1)
+    if place.field is not None:
+        field = next(n for n in at if lines[n].field == place.field)
+        last = min(field + 1, last)
+        first = at[0] if last - at[0] < height else field - 1
+    return min(kept_in(top, first, last, height), max(len(lines) - height, 0))
 
 
 def _field_lines(told: Told, number: int, at: bool, width: int) -> list[Line]:
@@ -59,15 +81,20 @@ def _field_lines(told: Told, number: int, at: bool, width: int) -> list[Line]:
     return [Line(row, number) for row in rows]
 
 
-def _guard_rows(found: Found, width: int) -> list[Row]:
-    text = found_words(found.level) if found.level else "nothing is found yet, or nothing sounds"
-    rows = _guard_lines("guard", text, "dim", width)
+def _found_rows(found: Found, width: int) -> list[Row]:
+    level, rows = found.level, []
+    if level is None:
+        rows += _text_rows("guard", "nothing is found yet, or nothing sounds", "dim", width)
+    elif not found.barred or level.level_db <= level.cap_db:  # else what bars it says the same
+        rows += _text_rows("guard", found_words(level), "dim", width)
     if found.barred:
-        rows += _guard_lines("barred", found.barred, "attention", width)
-    return rows
+        rows += _text_rows("barred", found.barred, "attention", width)
+    return rows + [
+        row for text in found.remarks for row in _text_rows("remark", text, "text", width)
+    ]
 
 
-def _guard_lines(key: str, text: str, role: Role, width: int) -> list[Row]:
+def _text_rows(key: str, text: str, role: Role, width: int) -> list[Row]:
     texts = wrap(text, width - 2 - _KEY, _MOST)
     heads = [f"  {pad(key, _KEY)}", *[" " * (2 + _KEY)] * len(texts)]
     return [fit((Span(h), Span(t, role)), width) for h, t in zip(heads, texts, strict=False)]
@@ -79,7 +106,7 @@ def _act_lines(act: Act, number: int, place: Place, lifted: bool, width: int) ->
     line = len(CUE_FIELDS) + number
     lit: Role = "text" if here else "dim"
     mark = f"{AT if here and place.field is None else ' '}{LIFTED if lifted else ' '}"
-    first, *more = wrap(sentence(act), width - 2, _MOST) or [""]
+    first, *more = wrap(sentence(act), width - 4, _MOST) or [""]
     rows = [(Span(mark, "text"), Span(first, lit)), *[(Span(f"    {t}", lit),) for t in more]]
     lines = [Line(fit(row, width), line) for row in rows]
     if here:

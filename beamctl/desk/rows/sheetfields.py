@@ -2,23 +2,22 @@
 
 from __future__ import annotations
 
-from functools import cache
 from typing import NamedTuple
 
+from beamctl.desk.forms import UNSET, field_of, is_written, value_of, written
 from beamctl.desk.rows.sheetwords import follow_on, target_words
 from beamctl.desk.sheetplace import ACT_FIELDS
-from beamctl.show.expected import Expected
 from beamctl.show.sheet import Act, Cue
 
-UNSET = "--"
-TARGET = "a seat, a spot, point X Y Z in metres, or angles AZIMUTH ELEVATION in degrees"
-THEN = "the cue that follows by itself, and how many seconds after this GO, as in 13 9.0"
+TARGET = "seat B4, spot NAME, point X Y Z or angles AZ EL"
+THEN = "a cue and the seconds after this GO, as in 13 9.0"
 _NAMED = {
     "beam": "a beam of this sheet",
-    "sound": "a sound file; what does not name one goes on sounding",
+    "sound": "a sound file of the show",
     "loop": "true repeats the sound",
     "target": TARGET,
     "via": "a surface to bounce off",
+    "reach": "far, aim (on the target), or metres",
 }
 
 
@@ -42,19 +41,14 @@ def cue_fields(cue: Cue) -> list[Told]:
 
 def act_fields(act: Act) -> list[Told]:
     """In the order of the cursor; dashes for what the act does not name."""
-    return [Told(key, _now(act, key), expects(key)) for key in ACT_FIELDS]
+    return [Told(key, _now(act, key), _expects(key)) for key in ACT_FIELDS]
 
 
-@cache
-def expects(key: str) -> str:
-    """What a field of an act wants."""
-    return _NAMED.get(key) or Expected(Act).at((key,))
+def _expects(key: str) -> str:
+    return _NAMED.get(key) or field_of(Act, key).expects
 
 
 def _now(act: Act, key: str) -> str:
     if key == "target":
         return target_words(act) or UNSET
-    value = getattr(act, key)
-    if value is None or value is False:
-        return UNSET
-    return "true" if value is True else f"{value:g}" if isinstance(value, float) else str(value)
+    return written(value_of(act, key)) if is_written(act, key) else UNSET

@@ -52,10 +52,13 @@ def list_row(cue: Cue, seen: Snapshot, signs: Signs, at: bool, width: int) -> Ro
 
 
 def kept_in(top: int, first: int, last: int, height: int) -> int:
-    """The first row that shows, moved as little as it takes to have rows `first` to `last` in."""
-    return max(min(top, first), last - height + 1, 0)
+    """The first row that shows, moved as little as it takes to have rows `first` to `last` in.
+
+    Where they do not fit, `first` is in.
+    """
+    return max(min(max(top, last - height + 1), first), 0)
 
 
 def no_cue_rows(width: int, new_key: str) -> list[Row]:
     """A sheet without cues."""
-    return [fit((Span("no cue yet"), Span(f"  {new_key} writes the first", "text")), width)]
+    return [fit((Span("  no cue yet: "), Span(f"{new_key} writes the first", "text")), width)]

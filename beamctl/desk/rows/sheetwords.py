@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable, Iterator
+
 from beamctl.desk.format import level
 from beamctl.show.sheet import Act, Cue
 from beamctl.snapshot import CueLevel
@@ -47,11 +49,11 @@ def sentence(act: Act) -> str:
 
 def _manner(act: Act) -> list[str]:
     """How a beam sounds from this act on, as far as the act names it."""
-    said = [act.law or ""]
+    said = [str(act.law)] if act.law is not None else []
     said += [f"depth {act.depth:.2f}"] if act.depth is not None else []
     said += [_reach(act.reach)] if act.reach is not None else []
     said += [f"{level(act.trim_db)} dB"] if act.trim_db is not None else []
-    return [word for word in said if word]
+    return said
 
 
 def _reach(reach: float | str) -> str:
@@ -71,6 +73,14 @@ def found_words(found: CueLevel) -> str:
     left_db = found.cap_db - found.level_db
     left = f"{left_db:.1f} dB left" if left_db >= 0.0 else f"{-left_db:.1f} dB over"
     return (
-        f"worst at {found.seat}: {level(found.level_db)} dB of {found.cap_db:g} in the "
-        f"{found.band_hz / 1000.0:g} kHz band, {left}, {seconds(round(found.at_s, 1))} after GO"
+        f"{left} at {found.seat}: {level(found.level_db)} of {found.cap_db:g} dB at "
+        f"{found.band_hz / 1000.0:g} kHz, {found.at_s:.1f} s after GO"
     )
+
+
+def remarks_of(remarks: Iterable[str], ref: str) -> Iterator[str]:
+    """What the reader remarks on cue `ref`, without the file, the line and the cue."""
+    for remark in remarks:
+        _, found, about = remark.partition(f" cue {ref}")
+        if found and about[:1] in (" ", ":"):
+            yield about.lstrip(" :")

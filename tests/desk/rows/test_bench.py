@@ -11,7 +11,7 @@ from desk.conftest import NIGHT_TRAM
 from beamctl.desk.benchlook import Look, Looker, Question
 from beamctl.desk.format import Row, length
 from beamctl.desk.rows.bench import Bench, figure_rows, short_rows
-from beamctl.desk.rows.benchmap import BELOW, map_rows
+from beamctl.desk.rows.benchmap import BELOW, RoomMap
 from beamctl.desk.rows.legend import KEPT, short_legend
 from beamctl.desk.rows.sheetwords import found_words
 from beamctl.desk.trial import Trial
@@ -151,7 +151,7 @@ def test_a_small_terminal_has_act_and_levels_side_by_side() -> None:
 
 @pytest.mark.parametrize("section", [False, True])
 def test_the_picture_has_the_target_and_the_key(section: bool) -> None:
-    rows = map_rows(NIGHT_TRAM, look("2", 0, section))
+    rows = RoomMap().rows(NIGHT_TRAM, look("2", 0, section))
     said = text_of(rows)
     assert len(rows) == SIZE[1] + BELOW
     assert all(length(row) <= SIZE[0] for row in rows)
