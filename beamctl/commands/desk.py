@@ -9,6 +9,7 @@ from pathlib import Path
 
 import click
 
+from beamctl.commands.keys import user_keymap
 from beamctl.commands.newshow import begin_show, is_new
 from beamctl.commands.options import JOURNAL, SHOW, SINK
 from beamctl.files.reader import load_show
@@ -26,22 +27,26 @@ def desk(show: Path, sink: str, journal: Path | None, plain: bool) -> None:
     that works.
 
     Leaving the desk never changes a sample. A host that this desk started ends with it, unless the
-    output is OPEN, HUSHED or TRIPPED: then it runs on, and `beamctl desk` joins it again.
+    output is OPEN, HUSHED or TRIPPED, or edits are not on disk: then it runs on, and `beamctl desk`
+    joins it again.
     """
     from beamctl.commands.joining import HOST_STARTS_S, answers, said_by_host, start_host
     from beamctl.desk.app import run_desk
     from beamctl.host.link import Link
+    from beamctl.host.places import state_folder
 
+    keymap = user_keymap()
     if is_new(show):
         begin_show(show)
     load_show(show)
     link = Link(show)
     host = None if answers(link) else start_host(show, sink, journal, link)
-    code = run_desk(link, plain, _unread(show))
+    code = run_desk(link, state_folder() / "desk.log", plain, _unread(show), keymap)
     if host is not None and answers(link):
-        output = link.snapshot().output
-        if output in ("OPEN", "HUSHED", "TRIPPED"):
-            click.echo(f"The output is {output} and the host runs on.")
+        seen = link.snapshot()
+        if seen.output in ("OPEN", "HUSHED", "TRIPPED") or seen.edit.unsaved:
+            unsaved = f", {seen.edit.unsaved} edits are not on disk," if seen.edit.unsaved else ""
+            click.echo(f"The output is {seen.output}{unsaved} and the host runs on.")
             click.echo(f"  beamctl desk {show}   joins it;   beamctl host {show} --stop   ends it")
         else:
             link.stop_host()

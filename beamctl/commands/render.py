@@ -10,7 +10,6 @@ import click
 
 from beamctl.commands.options import SHOW, Bar, moment
 from beamctl.errors import DeviceError, ShowError
-from beamctl.files.reader import load_show
 from beamctl.show.records import Record
 
 
@@ -45,11 +44,14 @@ def render(
     """
     from beamctl.host import offline
     from beamctl.host.barring import barred, cue_levels
+    from beamctl.host.document import Document, Loaded
     from beamctl.host.journal import Journal
+    from beamctl.host.loading import Hashes
     from beamctl.host.stepped import Stepped
     from beamctl.sinks.rf64 import Rf64Writer
 
-    found = load_show(show)
+    document = Document.of(show)
+    found = document.load()
     rate_hz = found.rig.rate_hz
     samples = moment(length, rate_hz)
     if journal is not None and journal.exists():
@@ -70,7 +72,8 @@ def render(
     if guard is not None:
         records = sorted([*records, *guard.records], key=lambda record: record.sample)
     if journal is not None:
-        kept = Journal(journal, found, f"file:{output}")
+        loaded = Loaded(found, Hashes().of(found))
+        kept = Journal(journal, loaded, document.with_lists(found.rig), f"file:{output}")
         kept.write([Record(0, "stream"), *records, offline.left(samples, digest)])
         kept.close()
     seconds, spent = samples / rate_hz, time.monotonic() - started

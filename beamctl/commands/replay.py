@@ -8,6 +8,7 @@ from pathlib import Path
 import click
 
 from beamctl.commands.options import Bar
+from beamctl.errors import ShowError
 
 
 @click.command()
@@ -18,12 +19,17 @@ def replay(log: Path, output: Path | None) -> None:
     from beamctl.host import offline
     from beamctl.sinks.rf64 import Rf64Writer
 
-    found, streams = offline.recall(log)
-    writer = Rf64Writer(output, found.rig.rate_hz, found.channels) if output else None
+    streams = offline.recall(log)
+    forms = list(dict.fromkeys((s.show.channels, s.show.rig.rate_hz) for s in streams))
+    if output and len(forms) > 1:
+        told = ", then ".join(f"{feeds} feeds at {rate_hz} Hz" for feeds, rate_hz in forms)
+        raise ShowError(f"{log.name}: {told}, which no one file can hold", "leave -o out")
+    (channels, rate_hz), *_ = forms
+    writer = Rf64Writer(output, rate_hz, channels) if output else None
     write = writer.write if writer else _discard
     try:
         with Bar(True) as progress:
-            outcomes = offline.replay(found, streams, write, progress)
+            outcomes = offline.replay(streams, write, progress)
     except BaseException:
         if writer:
             writer.abandon()

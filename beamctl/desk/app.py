@@ -9,9 +9,9 @@ import os
 import sys
 from collections.abc import Callable
 from functools import partial
+from pathlib import Path
 from typing import Any, ClassVar
 
-import platformdirs
 from textual import events
 from textual.app import App
 from textual.driver import Driver
@@ -295,18 +295,19 @@ class DeskApp(App[int], inherit_bindings=False):
 
 def run_desk(
     link: HostLink,
+    log: Path,
     plain: bool = False,
     on_read: Callable[[], None] | None = None,
     keymap: Keymap = DEFAULT,
 ) -> int:
     """Run the desk on this terminal until the operator leaves; 0, or 1 when the desk itself failed.
 
-    Leaving, and failing too, changes no sound. `link` is closed at the end. With `on_read` the
-    caution is shown first, and `on_read` is called once somebody has closed it.
+    Leaving, and failing too, changes no sound. `link` is closed at the end. `log` takes what native
+    libraries and a desk that fails have to say. With `on_read` the caution is shown first, and
+    `on_read` is called once somebody has closed it.
     """
     courier = Courier(link)
     app = DeskApp(courier, choose_form(plain, os.environ), on_read, keymap)
-    log = platformdirs.user_log_path("beamctl", appauthor=False) / "desk.log"
     sys.setswitchinterval(SWITCH_S)
     courier.start()
     try:

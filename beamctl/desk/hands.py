@@ -88,7 +88,7 @@ class Hands:
 
     @property
     def asks_leave(self) -> bool:
-        """The leave key was pressed once while it may sound."""
+        """The leave key was pressed once while it may sound, or with edits that are not saved."""
         return self._desk.clock() < self._leave_until_s
 
     @property
@@ -174,10 +174,12 @@ class Hands:
             self._desk.dim()
         elif name in (common.HELP.name, common.KEY_TEST.name, *common.SCREENS):
             self._desk.turn_to(name)
-        elif seen is not None and action.on:
+        elif seen is not None and action.on and action not in common.HISTORY:
             self._desk.do_verb(name, seen)
         elif seen is None or seen.stale_s is not None:
             self._desk.tell(f"{action.title}: not sent: no fresh picture of the host")
+        elif action in common.HISTORY:
+            self._desk.history(name)
         elif name == common.PALETTE.name:
             self.open(asks.palette(seen, self._desk.screen_name(), self._desk.keymap, self.do))
         elif name == common.FIND.name:
@@ -235,8 +237,10 @@ class Hands:
             self._desk.ask(ask.name, **ask.arguments)
 
     def _leave(self, seen: View | None) -> None:
-        sounds = seen is not None and seen.snapshot.output == "OPEN"
-        if sounds and not self.asks_leave:
+        asks = seen is not None and (
+            seen.snapshot.output == "OPEN" or seen.snapshot.edit.unsaved > 0
+        )
+        if asks and not self.asks_leave:
             self._leave_until_s = self._desk.clock() + LEAVE_S
         else:
             self._desk.leave()

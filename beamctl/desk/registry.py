@@ -7,5 +7,8 @@ from beamctl.desk.verbs import bench, common, sheet, tables
 
 EVERYTHING: dict[str, Action] = {
     action.name: action
-    for action in (*ACTIONS.values(), *common.VERBS, *sheet.VERBS, *bench.VERBS, *tables.VERBS)
+    for action in (
+        *(*ACTIONS.values(), *common.VERBS, *sheet.VERBS, *bench.VERBS, *tables.VERBS),
+        *common.HISTORY,
+    )
 }

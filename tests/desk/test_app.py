@@ -16,6 +16,7 @@ from beamctl.desk.courier import Courier
 from beamctl.desk.pages.help import HelpPage
 from beamctl.desk.rows.glyphs import draw
 from beamctl.desk.theme import Form
+from beamctl.snapshot import EditView
 
 UNKNOWN = ["a", "z", "space", "escape", "tab", "shift+tab", "up", "pageup", "h"]
 UNKNOWN += ["ctrl+p", "ctrl+z", "ctrl+j"]
@@ -317,3 +318,17 @@ def test_odd_sizes_do_not_break_it(host, size) -> None:
         asyncio.run(main())
     finally:
         courier.stop()
+
+
+def test_leaving_asks_while_edits_are_not_on_disk(host) -> None:
+    host.now = replace(host.now, output="SHUT", edit=EditView(undo="new cue 2", unsaved=3))
+
+    async def what(pilot: Pilot) -> None:
+        await until(pilot, lambda: pilot.app._view.snapshot.output == "SHUT")
+        await pilot.press("ctrl+q")
+        await until(pilot, lambda: "3 edits are not on disk" in text_of(pilot.app))
+        assert pilot.app.is_running
+        await pilot.press("ctrl+q")
+        await until(pilot, lambda: pilot.app._exit)
+
+    assert on_desk(host, what).return_value == 0

@@ -125,7 +125,12 @@ def test_what_is_typed_is_read(model: type[BaseModel], key: str, text: str, valu
         (Block, "seats", "8.5", "8.5: expected a whole number from 1 to 500"),
         (Block, "class", "sofa", "sofa: expected seats or crew"),
         (Spot, "at_m", "0 0", "0 0: expected x across, y from the stage, z up, in metres"),
-        (Spot, "at_m", "", "it cannot be left out: expected x across, y from the stage, z up, in metres"),
+        (
+            Spot,
+            "at_m",
+            "",
+            "it cannot be left out: expected x across, y from the stage, z up, in metres",
+        ),
         (PanelSpec, "grid", "8 8", "8 8: expected 3 numbers: columns, rows, pitch_mm"),
         (Wire, "listen", "here", 'here: expected "ADDRESS:PORT" with a port from 1 to 65535'),
         (Cue, "ref", "x", 'x: expected a cue reference such as "12", "12.5" or "12A"'),

@@ -64,7 +64,7 @@ def test_no_two_actions_share_a_key_where_both_work() -> None:
 def test_every_name_is_there_once_and_every_screen_has_a_page() -> None:
     from beamctl.desk.verbs import bench, common, sheet, tables
 
-    verbs = [*common.VERBS, *sheet.VERBS, *bench.VERBS, *tables.VERBS]
+    verbs = [*common.VERBS, *common.HISTORY, *sheet.VERBS, *bench.VERBS, *tables.VERBS]
     assert len(EVERYTHING) == len(ACTIONS) + len(verbs)
     assert set(SCREENS) | {"help", "key-test"} <= set(PAGES)
     assert all(set(action.on) <= set(PAGES) for action in verbs)

@@ -4,13 +4,13 @@ from __future__ import annotations
 
 from typing import ClassVar, NamedTuple
 
-from beamctl.desk.benchdeeds import Deeds, Here
-from beamctl.desk.benchlook import Look, Looker, Question
+from beamctl.desk.bench.deeds import Deeds, Here
+from beamctl.desk.bench.look import Look, Looker, Question
+from beamctl.desk.bench.painter import Painter
 from beamctl.desk.desk import Desk
 from beamctl.desk.format import Span, View, beside, fit
 from beamctl.desk.link import Draft
 from beamctl.desk.pages.page import Page, Rows, filled
-from beamctl.desk.painter import Painter
 from beamctl.desk.projection import X, Y
 from beamctl.desk.rows.bench import Bench, figure_rows, short_rows
 from beamctl.desk.rows.benchmap import BELOW, RoomMap
@@ -18,7 +18,7 @@ from beamctl.desk.rows.guard import status_rows
 from beamctl.desk.rows.heading import heading_row
 from beamctl.desk.rows.legend import short_legend
 from beamctl.desk.verbs import bench as verbs
-from beamctl.forecast.throw import in_air
+from beamctl.forecast.panel import in_air
 from beamctl.show.house import AirSpec
 from beamctl.show.show import Show
 from beamctl.snapshot import AirView

@@ -8,8 +8,8 @@ from beamctl.desk.format import View
 from beamctl.desk.pages.page import Rows
 from beamctl.desk.pages.tables import TablesPage
 from beamctl.desk.rows.caps import cap_rows
-from beamctl.desk.tableplace import TablePlace
-from beamctl.desk.tables import Table, cap_tables
+from beamctl.desk.tables.place import TablePlace
+from beamctl.desk.tables.tables import Table, cap_tables
 from beamctl.show.show import Show
 
 

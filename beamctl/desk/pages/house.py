@@ -4,14 +4,14 @@ from __future__ import annotations
 
 from typing import ClassVar
 
-from beamctl.desk import tabledeeds as deeds
 from beamctl.desk.box import Box
 from beamctl.desk.format import View
 from beamctl.desk.forms import fields, read, written
 from beamctl.desk.pages.page import Rows
 from beamctl.desk.pages.tables import TablesPage
 from beamctl.desk.rows.house import air_row, house_rows
-from beamctl.desk.tables import Table, house_tables
+from beamctl.desk.tables import deeds
+from beamctl.desk.tables.tables import Table, house_tables
 from beamctl.desk.verbs import tables as verbs
 from beamctl.show.house import AirSpec
 from beamctl.show.show import Show

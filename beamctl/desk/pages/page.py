@@ -14,6 +14,7 @@ from beamctl.desk.lines import Lines
 from beamctl.desk.rows.box import box_height, box_rows
 from beamctl.desk.rows.parts import legend_rows, notice_row
 from beamctl.desk.theme import Form
+from beamctl.desk.verbs.common import REDO, SAVE, UNDO
 
 Rows = list[Row]
 
@@ -70,7 +71,9 @@ class Page(Screen[None], inherit_bindings=False):
     def legend(self, view: View | None, width: int) -> Rows:
         """The keys that work here now."""
         writing = view is not None and view.snapshot.mode != "SHOW"
-        return legend_rows(self.desk.keymap.legend(self.NAME, writing), width)
+        told = self.desk.keymap.legend(self.NAME, writing)
+        idle = idle_history(view) if view is not None else set()
+        return legend_rows([entry for entry in told if entry[1] not in idle], width)
 
     def do(self, verb: str, view: View) -> None:
         """Do one of the page's own verbs; only called in WRITE and WALK, with a fresh picture."""
@@ -91,6 +94,13 @@ class Page(Screen[None], inherit_bindings=False):
         if part.styles.height is None or part.styles.height.value != len(rows):
             part.styles.height = len(rows)
         part.show(rows, stale)
+
+
+def idle_history(view: View) -> set[str]:
+    """Titles of undo, redo and save while they would lead nowhere."""
+    edit = view.snapshot.edit
+    leads = {UNDO.title: edit.undo, REDO.title: edit.redo, SAVE.title: edit.unsaved}
+    return {title for title, does in leads.items() if not does}
 
 
 def spaced(rows: Rows, gap: int) -> Rows:

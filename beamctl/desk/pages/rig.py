@@ -4,13 +4,13 @@ from __future__ import annotations
 
 from typing import ClassVar
 
-from beamctl.desk import tabledeeds as deeds
 from beamctl.desk.format import View
 from beamctl.desk.pages.page import Rows
 from beamctl.desk.pages.tables import TablesPage
 from beamctl.desk.rows import parts
 from beamctl.desk.rows.rig import panel_rows
-from beamctl.desk.tables import Table, rig_tables
+from beamctl.desk.tables import deeds
+from beamctl.desk.tables.tables import Table, rig_tables
 from beamctl.show.show import Show
 
 MOST_DRIVES = 4  # rows of panels below

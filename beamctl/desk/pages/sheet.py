@@ -9,7 +9,7 @@ from beamctl.desk.desk import Desk
 from beamctl.desk.format import Span, View
 from beamctl.desk.keymap import printed
 from beamctl.desk.link import Draft
-from beamctl.desk.pages.page import Page, Rows, filled
+from beamctl.desk.pages.page import Page, Rows, filled, idle_history
 from beamctl.desk.registry import EVERYTHING
 from beamctl.desk.rows.guard import status_rows
 from beamctl.desk.rows.heading import heading_row
@@ -18,17 +18,16 @@ from beamctl.desk.rows.sheetcue import Found, Line, cue_lines, top_of
 from beamctl.desk.rows.sheetframe import frame
 from beamctl.desk.rows.sheetlist import Signs, kept_in, list_rows, no_cue_rows
 from beamctl.desk.rows.sheetwords import remarks_of
-from beamctl.desk.sheetchanges import change
-from beamctl.desk.sheetcompare import ComparePane
-from beamctl.desk.sheetcursor import SheetCursor, cues_of
-from beamctl.desk.sheetdeeds import DEEDS
-from beamctl.desk.sheethere import Here
-from beamctl.desk.sheetlifted import Lifted
-from beamctl.desk.sheetplace import Place
+from beamctl.desk.sheet.changes import change
+from beamctl.desk.sheet.compare import ComparePane
+from beamctl.desk.sheet.cursor import SheetCursor, cues_of
+from beamctl.desk.sheet.deeds import DEEDS
+from beamctl.desk.sheet.here import Here
+from beamctl.desk.sheet.lifted import Lifted
+from beamctl.desk.sheet.place import Place
 from beamctl.desk.verbs import sheet as verbs
 from beamctl.snapshot import CueLevel
 
-HISTORY = {verbs.UNDO.name: "undo", verbs.REDO.name: "redo", verbs.SAVE.name: "save"}
 ARROWS = (verbs.UP, verbs.DOWN, verbs.PAGE_UP, verbs.PAGE_DOWN, verbs.FIRST, verbs.LAST)
 AT_ONCE = (  # what asks nothing, and so might be done to what the edit before is just changing
     *(verbs.COPY, verbs.SPLIT, verbs.EARLIER, verbs.LATER, verbs.LIFT, verbs.SET_DOWN),
@@ -38,7 +37,7 @@ FAR = 1_000_000  # rows
 
 
 class SheetPage(Page):
-    """Draws, and moves the cursor; what changes the show is in `sheetdeeds`."""
+    """Draws, and moves the cursor; what changes the show is in `sheet.deeds`."""
 
     NAME = "sheet"
     PARTS: ClassVar = ("sheet",)
@@ -114,7 +113,7 @@ class SheetPage(Page):
         """Of the keys those that lead somewhere now; help and the palette tell all of them."""
         writing = view is not None and view.snapshot.mode != "SHOW"
         told = self.desk.keymap.legend(self.NAME, writing)
-        idle = self._idle(view) if view is not None else set()
+        idle = self._idle(view) | idle_history(view) if view is not None else set()
         return legend_rows([entry for entry in told if entry[1] not in idle], width)
 
     def _idle(self, view: View) -> set[str]:
@@ -125,10 +124,7 @@ class SheetPage(Page):
             verbs.SPLIT: bool(place.act),
             verbs.SET_DOWN: self._lifted != Lifted(),
             verbs.FIT: any(level.fits_db is not None for level in view.cue_levels),
-            verbs.UNDO: edit.undo,
-            verbs.REDO: edit.redo,
-            verbs.SAVE: edit.unsaved,
-            verbs.COMPARE: edit.unsaved,
+            verbs.COMPARE: edit.unsaved or self._compare.is_open,
         }
         return {verb.title for verb in (*ARROWS, *(v for v, does in leads.items() if not does))}
 
@@ -147,9 +143,7 @@ class SheetPage(Page):
         self._cursor.move(view, place)  # the Bench, too, takes what was worked on here
         if self._moves(verb, view, place):
             return
-        if verb in HISTORY:
-            self.desk.history(HISTORY[verb])
-        elif verb == verbs.STAND_BY.name:
+        if verb == verbs.STAND_BY.name:
             if cues:
                 self.desk.ask("standby", ref=cues[place.cue].ref)
         elif EVERYTHING[verb] in AT_ONCE and self._is_late(view, draft):

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from typing import ClassVar
 
-from beamctl.desk import tabledeeds as deeds
 from beamctl.desk.asking import Asking
 from beamctl.desk.desk import Desk
 from beamctl.desk.format import Span, View
@@ -12,13 +11,13 @@ from beamctl.desk.pages.page import Page, Rows, filled
 from beamctl.desk.rows.guard import status_rows
 from beamctl.desk.rows.heading import heading_row
 from beamctl.desk.rows.tables import Shares, field_at, field_rows, list_rows, shares, table_at
-from beamctl.desk.tableplace import TablePlace
-from beamctl.desk.tables import Table
+from beamctl.desk.tables import deeds
+from beamctl.desk.tables.place import TablePlace
+from beamctl.desk.tables.tables import Table
 from beamctl.desk.verbs import tables as verbs
 from beamctl.show.show import Show
 
 MOVES = {verbs.UP.name: -1, verbs.DOWN.name: 1, verbs.FIRST.name: -9999, verbs.LAST.name: 9999}
-HISTORY = {verbs.UNDO.name: "undo", verbs.REDO.name: "redo", verbs.SAVE.name: "save"}
 
 
 class TablesPage(Page):
@@ -103,8 +102,6 @@ class TablesPage(Page):
             self._place = place.moved(MOVES[verb], tables)
         elif verb == verbs.OUT.name:
             self.out(place, tables)
-        elif verb in HISTORY:
-            self.desk.history(HISTORY[verb])
         elif verb == verbs.NEW.name:
             self.begin(view.draft.show)
         elif verb == verbs.RENAME.name:

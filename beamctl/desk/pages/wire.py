@@ -10,7 +10,7 @@ from beamctl.desk.forms import read
 from beamctl.desk.pages.page import Rows
 from beamctl.desk.pages.tables import TablesPage
 from beamctl.desk.rows.wire import wire_rows
-from beamctl.desk.tables import ALLOW, WIRE, Allowed, Table, wire_tables
+from beamctl.desk.tables.tables import ALLOW, WIRE, Allowed, Table, wire_tables
 from beamctl.show.edits import Edit, Set
 from beamctl.show.show import Show
 

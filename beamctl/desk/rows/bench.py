@@ -10,11 +10,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from beamctl.desk.benchlook import Look
+from beamctl.desk.bench.look import Look
+from beamctl.desk.bench.trial import Trial
 from beamctl.desk.format import BLANK, Role, Row, Span, beside, fit, level, pad, signed, wrap
 from beamctl.desk.rows.parts import PEAK_DIFFERS_DEG
 from beamctl.desk.rows.sheetwords import found_words, seconds
-from beamctl.desk.trial import Trial
 from beamctl.forecast.acts import AIM_KEYS
 from beamctl.forecast.berktay import heard
 from beamctl.forecast.consequence import Seat

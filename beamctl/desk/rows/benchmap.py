@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from beamctl.desk.benchlook import Look
+from beamctl.desk.bench.look import Look
 from beamctl.desk.format import Row, Span, fit
 from beamctl.desk.projection import Projection
 from beamctl.desk.rows import fieldmap

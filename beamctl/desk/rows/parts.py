@@ -138,7 +138,7 @@ def notice_row(view: View | None, width: int, gone: bool = False) -> Row:
         spans.append(Span(f"HOST SILENT for {clock(view.stale_s)} s", "alarm"))
     if view.asks_leave:
         again = printed(view.keymap.keys_of("leave"))
-        spans.append(Span(f"Leave? Sound goes on. {again} again within 3 s", "attention"))
+        spans.append(Span(f"Leave? {_goes_on(view)} {again} again within 3 s", "attention"))
     notices = view.snapshot.notices
     if notices:
         # Only its mark is lit: a full line in amber would light up the booth.
@@ -147,6 +147,14 @@ def notice_row(view: View | None, width: int, gone: bool = False) -> Row:
     if notices:
         joined.append(Span(f" {notices[0]}"))
     return fit(joined or [Span("no notices")], width)
+
+
+def _goes_on(view: View) -> str:
+    """What leaving does not touch."""
+    unsaved = view.snapshot.edit.unsaved
+    kept = f"{unsaved} edits are not on disk, and stay with the host." if unsaved else ""
+    sound = "Sound goes on." if view.snapshot.output == "OPEN" else ""
+    return f"{sound} {kept}".strip()
 
 
 def legend_rows(entries: list[tuple[str, str]], width: int) -> list[Row]:

@@ -9,7 +9,7 @@ from beamctl.desk.format import BLANK, Role, Row, Span, fit, pad, wrap
 from beamctl.desk.rows.sheetfields import Told, act_fields, cue_fields
 from beamctl.desk.rows.sheetlist import AT, LIFTED, kept_in
 from beamctl.desk.rows.sheetwords import found_words, sentence
-from beamctl.desk.sheetplace import CUE_FIELDS, Place
+from beamctl.desk.sheet.place import CUE_FIELDS, Place
 from beamctl.show.sheet import Act, Cue
 from beamctl.snapshot import CueLevel
 

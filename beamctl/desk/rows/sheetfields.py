@@ -6,7 +6,7 @@ from typing import NamedTuple
 
 from beamctl.desk.forms import UNSET, field_of, is_written, value_of, written
 from beamctl.desk.rows.sheetwords import follow_on, target_words
-from beamctl.desk.sheetplace import ACT_FIELDS
+from beamctl.desk.sheet.place import ACT_FIELDS
 from beamctl.show.sheet import Act, Cue
 
 TARGET = "seat B4, spot NAME, point X Y Z or angles AZ EL"

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from beamctl.desk.format import BLANK, Role, Row, Span, beside, fit, length, pad, wrap
 from beamctl.desk.forms import UNSET, written
-from beamctl.desk.tables import Line, Table
+from beamctl.desk.tables.tables import Line, Table
 
 AT = ">"
 GAP = 2

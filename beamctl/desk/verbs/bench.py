@@ -40,11 +40,8 @@ TRY = _verb("try", "Sound it now", ("p",), "Sounds the act as the sheet has it, 
 QUIET = _verb("quiet", "End the try", ("q",), "Ends what Sound it now began.")
 ACT_BACK = _verb("act-back", "Act", ("pageup",), "To the act before, and to the cue before.")
 ACT_ON = _verb("act-on", "Act", ("pagedown",), "To the next act, and to the next cue.")
-UNDO = _verb("undo", "Undo", ("u",), "Takes the newest edit back, as often as there are edits.")
-REDO = _verb("redo", "Redo", ("y",), "Makes the edit again that Undo took back.")
-SAVE = _verb("save", "Write", ("w",), "Writes the show to disk; the show before it is kept beside.")
 
 AIMS = (LEFT, RIGHT, UP, DOWN, STEP, ANGLES, GO_TO, SEAT_ON, SEAT_BACK, ROW_ON, ROW_BACK, SPOT_ON)
 SHAPES = (SPOT_BACK, VIA, DEPTH, LAW, REACH, TRIM, LOUDER, SOFTER, OVER, TAKE, FORGET)
-OTHERS = (VIEW, HEIGHT, TRY, QUIET, ACT_BACK, ACT_ON, UNDO, REDO, SAVE)
+OTHERS = (VIEW, HEIGHT, TRY, QUIET, ACT_BACK, ACT_ON)
 VERBS: tuple[Action, ...] = (*AIMS, *SHAPES, *OTHERS)

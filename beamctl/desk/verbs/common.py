@@ -46,4 +46,18 @@ SCREENS: dict[str, Action] = {
         Action("log", None, "Log", ("shift+f8", "f20"), "The journal of this evening."),
     )
 }
+EDITS = ("sheet", "bench", "house", "rig", "caps", "wire")  # the screens where a show is written
+UNDO = Action(
+    "undo",
+    None,
+    "Undo",
+    ("u",),
+    "Takes the newest edit back, as often as there are edits.",
+    on=EDITS,
+)
+REDO = Action("redo", None, "Redo", ("y",), "Makes the edit again that Undo took back.", on=EDITS)
+SAVE = Action(
+    "save", None, "Save", ("w",), "Writes the show to disk; the show before it is kept.", on=EDITS
+)
+HISTORY = (UNDO, REDO, SAVE)
 VERBS = (HELP, *SCREENS.values(), PALETTE, FIND, DIM, SWITCH_MODE, KEY_TEST, LEAVE)

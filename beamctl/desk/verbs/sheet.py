@@ -94,13 +94,10 @@ COMPARE = _verb(
     ("v",),
     "Lists what differs from the show as it was saved last; the same key closes the list.",
 )
-UNDO = _verb("undo", "Undo", ("u",), "Takes the newest edit back, as often as there are edits.")
-REDO = _verb("redo", "Redo", ("y",), "Makes the edit again that Undo took back.")
-SAVE = _verb("save", "Write", ("w",), "Writes the show to disk; the show before it is kept beside.")
 
 MOVES = (UP, DOWN, PAGE_UP, PAGE_DOWN, FIRST, LAST, IN, OUT)
 DEEDS = (
     *(NEW_CUE, NEW_ACT, COPY, SPLIT, RENUMBER, EARLIER, LATER, LIFT, SET_DOWN, TAKE_AWAY, TITLE),
-    *(NOTE, BEAMS, FIT, STAND_BY, COMPARE, UNDO, REDO, SAVE),
+    *(NOTE, BEAMS, FIT, STAND_BY, COMPARE),
 )
 VERBS: tuple[Action, ...] = (*MOVES, *DEEDS)

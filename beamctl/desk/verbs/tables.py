@@ -44,9 +44,6 @@ TAKE_AWAY = _verb(
     ("delete", "backspace"),
     "Takes the table away, or leaves the field out; nothing is asked, Undo brings it back.",
 )
-UNDO = _verb("undo", "Undo", ("u",), "Takes the newest edit back, as often as there are edits.")
-REDO = _verb("redo", "Redo", ("y",), "Makes the edit again that Undo took back.")
-SAVE = _verb("save", "Write", ("w",), "Writes the show to disk; the show before it is kept beside.")
 AIR_NOW = _verb(
     "air-now",
     "Air now",
@@ -76,6 +73,6 @@ LOG_NARROW = _verb(
     "log-narrow", "Narrow", ("n",), "Leaves only rows that have your word in them.", ("log",)
 )
 
-EDITS = (UP, DOWN, FIRST, LAST, IN, OUT, NEW, RENAME, TAKE_AWAY, UNDO, REDO, SAVE)
+EDITS = (UP, DOWN, FIRST, LAST, IN, OUT, NEW, RENAME, TAKE_AWAY)
 LOG = (LOG_UP, LOG_DOWN, LOG_PAGE_UP, LOG_PAGE_DOWN, LOG_FIRST, LOG_LAST, LOG_NARROW)
 VERBS: tuple[Action, ...] = (*EDITS, AIR_NOW, CAPS, *LOG)

@@ -11,7 +11,7 @@ from desk.driving import on_desk, text_of, until
 from textual.pilot import Pilot
 
 from beamctl.desk.keyguard import PASTE_S
-from beamctl.desk.newtables import begun
+from beamctl.desk.tables.new import begun
 from beamctl.show.edits import Drop, Edit, Rename, Set
 from beamctl.snapshot import AirView
 
@@ -69,7 +69,9 @@ def test_a_refused_edit_opens_its_box_again_with_what_was_typed_and_the_reason(h
         await shows(pilot, "FIRST_M OF BLOCK BENCHES", "-1.925 4.5 1.2_")
         await press(pilot, "ctrl+u")
         await enter(pilot, "0 4.5 1.2")
-        await shows(pilot, host.refuses, "Type x across, y from the stage, z up, in metres: 0 4.5 1.2_")
+        await shows(
+            pilot, host.refuses, "Type x across, y from the stage, z up, in metres: 0 4.5 1.2_"
+        )
         host.refuses = ""
         await press(pilot, "backspace")
         await enter(pilot, "3")

@@ -8,13 +8,13 @@ from functools import cache
 import pytest
 from desk.conftest import NIGHT_TRAM
 
-from beamctl.desk.benchlook import Look, Looker, Question
+from beamctl.desk.bench.look import Look, Looker, Question
+from beamctl.desk.bench.trial import Trial
 from beamctl.desk.format import Row, length
 from beamctl.desk.rows.bench import Bench, figure_rows, short_rows
 from beamctl.desk.rows.benchmap import BELOW, RoomMap
 from beamctl.desk.rows.legend import KEPT, short_legend
 from beamctl.desk.rows.sheetwords import found_words
-from beamctl.desk.trial import Trial
 from beamctl.show.sheet import Act
 from beamctl.snapshot import CueLevel
 
@@ -160,7 +160,7 @@ def test_the_picture_has_the_target_and_the_key(section: bool) -> None:
 
 
 def test_the_loudest_of_the_plan_is_at_the_target() -> None:
-    """It is loudest where the beam comes down to that height, but for what falls under the panel."""
+    """Loudest where the beam comes down to that height, but for what falls under the panel."""
     seen = look("2")
     seats = seen.levels_db[: SIZE[1] // 2]
     row, column = divmod(int(seats.argmax()), SIZE[0])

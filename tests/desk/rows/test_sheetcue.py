@@ -8,7 +8,7 @@ from desk.conftest import NIGHT_TRAM
 
 from beamctl.desk.format import length
 from beamctl.desk.rows.sheetcue import Found, cue_lines, top_of
-from beamctl.desk.sheetplace import ACT_FIELDS, CUE_FIELDS, Place
+from beamctl.desk.sheet.place import ACT_FIELDS, CUE_FIELDS, Place
 from beamctl.show.sheet import Cue
 from beamctl.snapshot import CueLevel
 

@@ -17,7 +17,7 @@ from beamctl.desk.rows.tables import (
     table_at,
     top,
 )
-from beamctl.desk.tables import cap_tables, house_tables, rig_tables, wire_tables
+from beamctl.desk.tables.tables import cap_tables, house_tables, rig_tables, wire_tables
 
 HOUSE, RIG = house_tables(NIGHT_TRAM), rig_tables(NIGHT_TRAM)
 CAPS, WIRE = cap_tables(NIGHT_TRAM), wire_tables(NIGHT_TRAM)

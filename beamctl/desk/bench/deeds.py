@@ -6,14 +6,14 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from beamctl.desk.benchboxes import SOFTEST_DB, angles_box, height_box, try_box
-from beamctl.desk.benchlook import Look
+from beamctl.desk.bench.boxes import SOFTEST_DB, angles_box, height_box, try_box
+from beamctl.desk.bench.look import Look
+from beamctl.desk.bench.seating import across, along, nearest
+from beamctl.desk.bench.trial import Trial
 from beamctl.desk.desk import Desk
 from beamctl.desk.link import Draft
-from beamctl.desk.seating import across, along, nearest
-from beamctl.desk.sheetboxes import NO_TARGET, TARGET_KEYS, act_box
-from beamctl.desk.sheetchanges import fields_edit
-from beamctl.desk.trial import Trial
+from beamctl.desk.sheet.boxes import NO_TARGET, TARGET_KEYS, act_box
+from beamctl.desk.sheet.changes import fields_edit
 from beamctl.desk.verbs import bench as verbs
 from beamctl.forecast.acts import after
 from beamctl.forecast.sight import aim_angles
@@ -99,9 +99,6 @@ class Deeds:
             verbs.VIEW.name: lambda here: self._turn_view(),
             verbs.HEIGHT.name: lambda here: self._ask_height(),
             verbs.QUIET.name: lambda here: self._desk.ask("sound-off", beam=here.act.beam),
-            verbs.UNDO.name: lambda here: self._desk.history("undo"),
-            verbs.REDO.name: lambda here: self._desk.history("redo"),
-            verbs.SAVE.name: lambda here: self._desk.history("save"),
         }
 
     def _aimed(self) -> Mapping[str, Callable[[Here, Look], None]]:

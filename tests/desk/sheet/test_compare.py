@@ -9,7 +9,7 @@ import pytest
 from desk.writing import WritingHost
 
 from beamctl.desk.link import Draft
-from beamctl.desk.sheetcompare import ComparePane, compared
+from beamctl.desk.sheet.compare import ComparePane, compared
 from beamctl.show.edits import Drop, Edit, Put, Set
 
 

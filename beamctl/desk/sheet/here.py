@@ -7,8 +7,8 @@ from dataclasses import dataclass
 
 from beamctl.desk.asking import Asking
 from beamctl.desk.link import Draft
-from beamctl.desk.sheetlifted import Lifted
-from beamctl.desk.sheetplace import Place
+from beamctl.desk.sheet.lifted import Lifted
+from beamctl.desk.sheet.place import Place
 from beamctl.show.sheet import Act, Cue, Sheet
 from beamctl.snapshot import CueLevel
 

@@ -6,7 +6,7 @@ from collections.abc import Callable
 
 from beamctl.desk.asking import Asking
 from beamctl.desk.box import Box
-from beamctl.desk.sheethere import Here
+from beamctl.desk.sheet.here import Here
 from beamctl.show.checks import SHEET
 from beamctl.show.edits import Drop, Edit, Put, Rename, Set
 from beamctl.show.expected import A_NAME

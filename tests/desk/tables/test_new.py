@@ -7,14 +7,14 @@ from pathlib import Path
 
 import pytest
 
-from beamctl.desk.newtables import KINDS, begun
+from beamctl.desk.tables.new import KINDS, begun
 from beamctl.files.edits import edited
 from beamctl.files.reader import read_show
 from beamctl.show.edits import Edit, Put
 from beamctl.show.house import House
 from beamctl.show.show import Show
 
-FOLDER = Path(__file__).parents[2] / "scenes" / "night-tram"
+FOLDER = Path(__file__).parents[3] / "scenes" / "night-tram"
 TEXTS = {path.name: path.read_text(encoding="utf-8") for path in FOLDER.glob("*.toml")}
 
 

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from beamctl.desk.sheethere import Here
-from beamctl.desk.sheetlifted import Lifted
-from beamctl.desk.sheetplace import Place
+from beamctl.desk.sheet.here import Here
+from beamctl.desk.sheet.lifted import Lifted
+from beamctl.desk.sheet.place import Place
 from beamctl.show import writing
 from beamctl.show.edits import Edit, Rename
 

@@ -11,11 +11,11 @@ from desk.conftest import NIGHT_TRAM, FakeHost
 
 from beamctl.desk.asking import Asking
 from beamctl.desk.box import Box
-from beamctl.desk.sheetchanges import change
-from beamctl.desk.sheetdeeds import DEEDS
-from beamctl.desk.sheethere import Here
-from beamctl.desk.sheetlifted import Lifted
-from beamctl.desk.sheetplace import Place
+from beamctl.desk.sheet.changes import change
+from beamctl.desk.sheet.deeds import DEEDS
+from beamctl.desk.sheet.here import Here
+from beamctl.desk.sheet.lifted import Lifted
+from beamctl.desk.sheet.place import Place
 from beamctl.desk.verbs import sheet as verbs
 from beamctl.show.edits import Drop, Edit, Move, Put, Rename, Set
 from beamctl.snapshot import Answer, CueLevel

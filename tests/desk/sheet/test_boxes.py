@@ -10,7 +10,7 @@ import pytest
 from desk.conftest import NIGHT_TRAM, FakeHost
 
 from beamctl.desk.box import Box
-from beamctl.desk.sheetboxes import (
+from beamctl.desk.sheet.boxes import (
     NO_TARGET,
     act_box,
     cue_box,
@@ -18,8 +18,8 @@ from beamctl.desk.sheetboxes import (
     read_follow_on,
     read_target,
 )
-from beamctl.desk.sheetchanges import emptied, fields_edit, fitted
-from beamctl.desk.sheetplace import ACT_FIELDS, CUE_FIELDS
+from beamctl.desk.sheet.changes import emptied, fields_edit, fitted
+from beamctl.desk.sheet.place import ACT_FIELDS, CUE_FIELDS
 from beamctl.show.edits import Set
 from beamctl.show.sheet import Act, Cue
 

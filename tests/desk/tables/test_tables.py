@@ -7,8 +7,8 @@ from dataclasses import replace
 import pytest
 from desk.conftest import NIGHT_TRAM
 
-from beamctl.desk.tableplace import TablePlace
-from beamctl.desk.tables import (
+from beamctl.desk.tables.place import TablePlace
+from beamctl.desk.tables.tables import (
     Line,
     Table,
     cap_tables,

@@ -8,8 +8,8 @@ from beamctl.desk.asking import Asking
 from beamctl.desk.box import Box
 from beamctl.desk.desk import Desk
 from beamctl.desk.forms import field_box
-from beamctl.desk.newtables import begun
-from beamctl.desk.tables import Line, Table, change
+from beamctl.desk.tables.new import begun
+from beamctl.desk.tables.tables import Line, Table, change
 from beamctl.show.edits import Drop, Edit, Rename
 from beamctl.show.expected import A_NAME
 from beamctl.show.show import Show

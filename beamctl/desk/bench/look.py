@@ -8,13 +8,13 @@ from functools import lru_cache
 import numpy as np
 from numpy.typing import NDArray
 
+from beamctl.desk.bench.seating import ear_height_m
 from beamctl.desk.projection import Projection, X, Y, Z, fitted
-from beamctl.desk.seating import ear_height_m
 from beamctl.forecast.acts import after, before
 from beamctl.forecast.fieldmap import FieldMap, level_db
 from beamctl.forecast.landing import places_m
+from beamctl.forecast.panel import place_of
 from beamctl.forecast.sight import Sight, Sights
-from beamctl.forecast.throw import place_of
 from beamctl.show.settled import Settled
 from beamctl.show.sheet import Act
 from beamctl.show.show import Show
@@ -87,10 +87,10 @@ class Looker:
         size = question.width, question.height
         projection = fitted(places_m(show), across, up, *size)
         plane, cut = _section(sight) if question.section else _plan(question, sight)
-        throw = sights.throw(panel)
-        drive = throw.drive(place_of(state))
+        ready = sights.ready(panel)
+        drive = ready.drive(place_of(state))
         pressure = self._map(panel, projection, cut).pressure_pa(drive)
-        levels = level_db(throw.rest_gain(state.trim_db) * pressure)
+        levels = level_db(ready.rest_gain(state.trim_db) * pressure)
         levels = levels.reshape(question.height, STACKED, question.width).max(axis=1)
         return Look(
             found, state, sight, plane, cut[0], projection, levels, sights.complaint(panel, act)
@@ -105,7 +105,7 @@ class Looker:
                 points = projection.points_m(cut[0], STACKED).reshape(-1, 3)
                 if projection.up == Z:
                     points[:, X] += cut[1] * points[:, Y]
-                return FieldMap(sights.throw(panel), show.house, points)
+                return FieldMap(sights.ready(panel), show.house, points)
 
             self._map = made
         return self._sights

@@ -9,12 +9,12 @@ from collections.abc import Callable
 from typing import Any
 
 from beamctl.desk.box import Box
-from beamctl.desk.sheetbeams import beams
-from beamctl.desk.sheetchanges import change_cue, emptied, fitted
-from beamctl.desk.sheethere import Here
-from beamctl.desk.sheetlifted import Lifted
-from beamctl.desk.sheetmoves import NO_CUE, lift, move, set_down
-from beamctl.desk.sheetplace import Place
+from beamctl.desk.sheet.beams import beams
+from beamctl.desk.sheet.changes import change_cue, emptied, fitted
+from beamctl.desk.sheet.here import Here
+from beamctl.desk.sheet.lifted import Lifted
+from beamctl.desk.sheet.moves import NO_CUE, lift, move, set_down
+from beamctl.desk.sheet.place import Place
 from beamctl.desk.verbs import sheet as verbs
 from beamctl.show import writing
 from beamctl.show.settle import state_after

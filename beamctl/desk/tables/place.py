@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from beamctl.desk.tables import Line, Table
+from beamctl.desk.tables.tables import Line, Table
 
 Tables = tuple[Table, ...]
 

@@ -6,7 +6,7 @@ from dataclasses import replace
 
 from beamctl.desk.desk import Cursor
 from beamctl.desk.format import View
-from beamctl.desk.sheetplace import Place
+from beamctl.desk.sheet.place import Place
 from beamctl.show.sheet import Cue
 
 

@@ -6,8 +6,8 @@ from collections.abc import Mapping
 from typing import Any
 
 from beamctl.desk.forms import is_written, value_of, written
-from beamctl.desk.sheetboxes import NO_TARGET, act_box, cue_box, missing_names
-from beamctl.desk.sheethere import Here
+from beamctl.desk.sheet.boxes import NO_TARGET, act_box, cue_box, missing_names
+from beamctl.desk.sheet.here import Here
 from beamctl.show.checks import SHEET
 from beamctl.show.edits import Edit, Place, Rename, Set
 from beamctl.show.sheet import Act, Cue

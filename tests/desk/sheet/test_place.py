@@ -10,9 +10,9 @@ from desk.conftest import NIGHT_TRAM, FakeHost
 
 from beamctl.desk.desk import Cursor
 from beamctl.desk.format import View
-from beamctl.desk.sheetcursor import SheetCursor
-from beamctl.desk.sheetlifted import Lifted
-from beamctl.desk.sheetplace import ACT_FIELDS, CUE_FIELDS, Place
+from beamctl.desk.sheet.cursor import SheetCursor
+from beamctl.desk.sheet.lifted import Lifted
+from beamctl.desk.sheet.place import ACT_FIELDS, CUE_FIELDS, Place
 from beamctl.show.sheet import Act
 
 SHEET = NIGHT_TRAM.sheet

@@ -8,11 +8,11 @@ import time
 import pytest
 from desk.conftest import NIGHT_TRAM
 
-from beamctl.desk import painter as painting
-from beamctl.desk.benchboxes import angles_box, height_box, try_box
-from beamctl.desk.painter import Painter
-from beamctl.desk.seating import across, along, ear_height_m, nearest
-from beamctl.desk.trial import Trial
+from beamctl.desk.bench import painter as painting
+from beamctl.desk.bench.boxes import angles_box, height_box, try_box
+from beamctl.desk.bench.painter import Painter
+from beamctl.desk.bench.seating import across, along, ear_height_m, nearest
+from beamctl.desk.bench.trial import Trial
 from beamctl.show.house import House
 from beamctl.show.sheet import Act
 

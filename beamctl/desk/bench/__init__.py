@@ -1,0 +1,1 @@
+"""What is done on the Bench: a trial aim, its field, and what becomes of it."""

@@ -1,0 +1,1 @@
+"""What is done with named tables, on House, Rig, Wire and the caps."""
