@@ -30,7 +30,7 @@ MAY = {
     "signal": {"errors"},
     "engine": {"acoustics", "show", "signal", "errors"},
     "guard": {"acoustics", "show", "errors"},
-    "forecast": {"acoustics", "guard", "show", "errors"},
+    "forecast": {"acoustics", "guard", "show", "signal", "errors"},
     "files": {"acoustics", "show", "errors"},
     "sinks": {"errors"},
     "osc": {"actions", "errors", "show", "snapshot"},

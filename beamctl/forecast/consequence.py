@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from beamctl.acoustics.bands import band_at
 from beamctl.acoustics.transfer import REFERENCE_PA
-from beamctl.forecast.throw import air_of
+from beamctl.forecast.panel import air_of
 from beamctl.guard.field import Field
 from beamctl.guard.loudness import Loudness
 from beamctl.guard.points import HEAD_RADIUS_M

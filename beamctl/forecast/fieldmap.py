@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from beamctl.acoustics.geometry import PARALLEL
 from beamctl.acoustics.transfer import REFERENCE_PA, Emitters, image, transfer
-from beamctl.forecast.throw import Throw
+from beamctl.forecast.panel import ReadyPanel
 from beamctl.show.house import House, Surface
 
 Array = NDArray[np.float64]
@@ -21,15 +21,15 @@ LOWEST_PA = 1e-12
 class FieldMap:
     """What each feed of one panel makes at points (P, 3) of the room, by every path."""
 
-    def __init__(self, throw: Throw, house: House, points_m: Array) -> None:
+    def __init__(self, panel: ReadyPanel, house: House, points_m: Array) -> None:
         self._points = len(points_m)
         everywhere = np.arange(len(points_m))
-        self._paths = [(everywhere, self._path(throw, throw.emitters, points_m))]
+        self._paths = [(everywhere, self._path(panel, panel.emitters, points_m))]
         for surface in house.surface.values():
             edges = surface.corner_m, surface.along_m, surface.up_m
-            mirrored = image(throw.emitters, *edges, surface.reflection)
+            mirrored = image(panel.emitters, *edges, surface.reflection)
             lit = np.flatnonzero(_lit(mirrored.at_m.mean(axis=0), points_m, surface))
-            self._paths.append((lit, self._path(throw, mirrored, points_m[lit])))
+            self._paths.append((lit, self._path(panel, mirrored, points_m[lit])))
 
     def pressure_pa(self, drive: Phasors) -> Array:
         """Rms pressure (P,) for feeds driven with phasors (F,), a unit being a full-scale sine."""
@@ -39,9 +39,9 @@ class FieldMap:
         return found
 
     @staticmethod
-    def _path(throw: Throw, emitters: Emitters, points_m: Array) -> NDArray[np.complex64]:
+    def _path(panel: ReadyPanel, emitters: Emitters, points_m: Array) -> NDArray[np.complex64]:
         """Pressure per feed (F, P): few vectors at many places."""
-        found = transfer(points_m, emitters, throw.air, throw.spec.carrier_hz)
+        found = transfer(points_m, emitters, panel.air, panel.spec.carrier_hz)
         return np.ascontiguousarray(found.T, dtype=np.complex64)
 
 

@@ -17,7 +17,7 @@ from scipy.ndimage import maximum_filter, minimum_filter
 from beamctl.acoustics.geometry import angles_deg, to_room
 from beamctl.acoustics.pattern import FAR_M
 from beamctl.acoustics.transfer import transfer
-from beamctl.forecast.throw import Phasors, Throw
+from beamctl.forecast.panel import Phasors, ReadyPanel
 from beamctl.guard.travels import Place
 
 AGREE = 0.5  # of what the cells would make all in phase; a uniform panel's side lobes have 0.22
@@ -42,11 +42,11 @@ class Lobe(NamedTuple):
 class Lobes:
     """Looks all round the front of one panel, at one distance at a time."""
 
-    def __init__(self, throw: Throw) -> None:
-        self._throw = throw
-        at_m = throw.cells.at_m[~throw.cells.dead]
+    def __init__(self, panel: ReadyPanel) -> None:
+        self._panel = panel
+        at_m = panel.cells.at_m[~panel.cells.dead]
         extent_m = np.ptp(at_m, axis=0)[[0, 2]]
-        self._lobe = throw.wavelength_m / (extent_m + throw.wavelength_m)
+        self._lobe = panel.wavelength_m / (extent_m + panel.wavelength_m)
         steps = np.maximum(np.ceil(PER_LOBE / self._lobe), LEAST_STEPS).astype(int)
         axes = [np.arange(-n, n + 1) / n for n in steps]
         self._steps = np.array([axis[1] - axis[0] for axis in axes])
@@ -61,7 +61,7 @@ class Lobes:
 
     def first(self, drive: Phasors, place: Place) -> Lobe:
         """The beam itself."""
-        return self._lobe_at(self._throw.main_peak(drive, place), 0.0)
+        return self._lobe_at(self._panel.main_peak(drive, place), 0.0)
 
     def second(self, drive: Phasors, place: Place, first: Lobe) -> tuple[Lobe, ...]:
         """The second beams, loudest first."""
@@ -79,7 +79,7 @@ class Lobes:
 
     def _maxima(self, drive: Phasors, reference: float) -> Array:
         """Cosines (K, 2) of the maxima in which the cells agree, loudest first."""
-        each = drive[self._throw.cells.feed].astype(np.complex64)
+        each = drive[self._panel.cells.feed].astype(np.complex64)
         pressure, most = np.zeros(self._front.shape), np.ones(self._front.shape)
         pressure[self._front] = np.abs(self._cells @ each)
         most[self._front] = self._sizes @ np.abs(each)
@@ -97,22 +97,22 @@ class Lobes:
         """Work out what every cell makes at the distance of the focus, unless that is at hand."""
         if per_m == self._per_m:
             return
-        throw = self._throw
-        count = len(throw.cells.feed)
-        alone = throw.emitters._replace(feed=np.arange(count), feeds=count)
+        panel = self._panel
+        count = len(panel.cells.feed)
+        alone = panel.emitters._replace(feed=np.arange(count), feeds=count)
         units = _unit(self._cosines[self._front])
-        points_m = to_room(throw.frame, _radius_m(per_m) * units)
-        found = transfer(points_m, alone, throw.air, throw.spec.carrier_hz)
+        points_m = to_room(panel.frame, _radius_m(per_m) * units)
+        found = transfer(points_m, alone, panel.air, panel.spec.carrier_hz)
         self._most = float(np.abs(found).max()) or 1.0  # far off, no single precision would hold it
         self._cells = (found / self._most).astype(np.complex64)
         self._sizes, self._per_m = np.abs(self._cells), per_m
 
     def _levels(self, drive: Phasors, units: Array, per_m: float) -> Array:
         """Pressures in the directions (K, 3), on the sphere through the focus."""
-        throw = self._throw
-        points_m = to_room(throw.frame, _radius_m(per_m) * units)
-        hz = throw.spec.carrier_hz
-        return np.abs(transfer(points_m, throw.emitters, throw.air, hz) @ drive)
+        panel = self._panel
+        points_m = to_room(panel.frame, _radius_m(per_m) * units)
+        hz = panel.spec.carrier_hz
+        return np.abs(transfer(points_m, panel.emitters, panel.air, hz) @ drive)
 
     @staticmethod
     def _lobe_at(unit: Array, over_first_db: float) -> Lobe:

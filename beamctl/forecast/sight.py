@@ -13,7 +13,7 @@ from beamctl.forecast.consequence import Consequence, Listeners
 from beamctl.forecast.fieldmap import FieldMap, level_db
 from beamctl.forecast.landing import Landing, Room
 from beamctl.forecast.lobes import Lobe, Lobes
-from beamctl.forecast.throw import Throw, place_of
+from beamctl.forecast.panel import ReadyPanel, place_of
 from beamctl.show import aims
 from beamctl.show.house import House
 from beamctl.show.settled import Settled
@@ -62,33 +62,33 @@ class Sights:
         self.show = show
         self.room = Room(show)
         self._listeners = Listeners(show)
-        self._throws: dict[str, tuple[Throw, Lobes]] = {}
+        self._panels: dict[str, tuple[ReadyPanel, Lobes]] = {}
         self._hangs: dict[str, aims.Throw] = {}
         self._seats = show.house.seats()
 
-    def throw(self, panel: str) -> Throw:
+    def ready(self, panel: str) -> ReadyPanel:
         """The panel, ready to be aimed."""
         return self._ready(panel)[0]
 
     def look(self, beam: str, panel: str, state: Settled) -> Sight:
         """A settled beam; it counts as sounding whether or not it does."""
-        throw, lobes = self._ready(panel)
-        place, gain = place_of(state), throw.rest_gain(state.trim_db)
-        drive = throw.drive(place)
+        ready, lobes = self._ready(panel)
+        place, gain = place_of(state), ready.rest_gain(state.trim_db)
+        drive = ready.drive(place)
         first = lobes.first(drive, place)
-        landing = self._landing(throw, first)
-        seconds = [(lobe, self._landing(throw, lobe)) for lobe in lobes.second(drive, place, first)]
-        target_m = target_point(state, throw, self.show.house)
+        landing = self._landing(ready, first)
+        seconds = [(lobe, self._landing(ready, lobe)) for lobe in lobes.second(drive, place, first)]
+        target_m = target_point(state, ready, self.show.house)
         lands_m = np.array(landing.way_m[-1])
         aimed_m = lands_m if target_m is None else target_m
         ends = [lands_m, aimed_m, *(where.way_m[-1] for _, where in seconds)]
-        heard = FieldMap(throw, self.show.house, np.array(ends))
+        heard = FieldMap(ready, self.show.house, np.array(ends))
         levels = level_db(gain * heard.pressure_pa(drive))
-        far = level_db(gain * heard.pressure_pa(throw.drive((*place[:3], 0.0))))
+        far = level_db(gain * heard.pressure_pa(ready.drive((*place[:3], 0.0))))
         return Sight(
             aim_angles(state),
             (first.azimuth_deg, first.elevation_deg),
-            throw.steers,
+            ready.steers,
             target_m,
             landing,
             float(levels[0]),
@@ -104,30 +104,30 @@ class Sights:
     def complaint(self, panel: str, act: Act) -> str:
         """What keeps a panel from pointing where an act asks, or speaks against it; "" for none."""
         if panel not in self._hangs:
-            throw = self.throw(panel)
-            self._hangs[panel] = aims.throw_of(throw.spec, throw.cells, throw.speed_m_s)
+            ready = self.ready(panel)
+            self._hangs[panel] = aims.throw_of(ready.spec, ready.cells, ready.speed_m_s)
         if not act.aims:
             return ""
         told = aims.told_of(act, self._hangs[panel], self.show.house, self._seats)
         return next((what for _, what, _ in told), "")
 
-    def _ready(self, panel: str) -> tuple[Throw, Lobes]:
-        if panel not in self._throws:
-            throw = Throw(self.show, panel)
-            self._throws[panel] = throw, Lobes(throw)
-        return self._throws[panel]
+    def _ready(self, panel: str) -> tuple[ReadyPanel, Lobes]:
+        if panel not in self._panels:
+            ready = ReadyPanel(self.show, panel)
+            self._panels[panel] = ready, Lobes(ready)
+        return self._panels[panel]
 
-    def _landing(self, throw: Throw, lobe: Lobe) -> Landing:
-        toward = turn_to_room(throw.frame, lobe.unit)
-        return self.room.landing(throw.frame.origin_m, toward, throw.width_per_m)
+    def _landing(self, ready: ReadyPanel, lobe: Lobe) -> Landing:
+        toward = turn_to_room(ready.frame, lobe.unit)
+        return self.room.landing(ready.frame.origin_m, toward, ready.width_per_m)
 
 
-def target_point(state: Settled, throw: Throw, house: House) -> Array | None:
+def target_point(state: Settled, ready: ReadyPanel, house: House) -> Array | None:
     """The place in the room (3,) that is aimed at, by whatever way; None for plain angles."""
     target = state.target
     if target is None or target.point_m is None:
         return None
-    point = to_room(throw.frame, target.point_m)
+    point = to_room(ready.frame, target.point_m)
     if target.via:
         surface = house.surface[target.via]
         point = mirror_point(point, surface.corner_m, surface.along_m, surface.up_m)

@@ -5,6 +5,9 @@ The figures are those of `guard.bars`; here the sounds are prepared and their sp
 
 from __future__ import annotations
 
+from dataclasses import asdict, dataclass, field, replace
+from typing import Any
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -18,14 +21,25 @@ from beamctl.show.standing import GUARDED
 from beamctl.signal.spectra import Element, Meter
 
 
-def cue_levels(show: Show, progress: Progress) -> dict[str, Level]:
+@dataclass(slots=True)
+class Kept:
+    """What looks have in common whose shows differ in cues alone: the room's field, and spectra."""
+
+    room: Field | None = None
+    powers: dict[tuple[str, Programme], NDArray[np.float64]] = field(default_factory=dict)
+
+
+def cue_levels(show: Show, progress: Progress, kept: Kept | None = None) -> dict[str, Level]:
     """Every cue at its worst, in the order of the sheet; see `guard.bars.levels`.
 
     ShowError for a sound that cannot be read, DeviceError when the cache cannot be used.
     """
+    kept = kept or Kept()
     sounds = prepare_sounds(show, progress)
-    progress("field", 0, 1)
-    return levels(show, Field(show), sheet_powers(show, sounds), progress)
+    if kept.room is None:
+        progress("field", 0, 1)
+        kept.room = Field(show)
+    return levels(show, kept.room, sheet_powers(show, sounds, kept.powers), progress)
 
 
 def barred(found: dict[str, Level]) -> dict[str, str]:
@@ -33,8 +47,27 @@ def barred(found: dict[str, Level]) -> dict[str, str]:
     return {ref: level.bar.text for ref, level in found.items() if level.bar is not None}
 
 
-def sheet_powers(show: Show, sounds: Sounds) -> Powers:
-    """The spectra of a show's programmes, each worked out when it is first asked for."""
+def rows_of(found: dict[str, Level]) -> list[dict[str, Any]]:
+    """The same levels as rows of `snapshot.CueLevel`."""
+    rows = []
+    for level in found.values():
+        row = asdict(replace(level, bar=None))
+        del row["bar"]
+        if level.bar is not None:
+            row |= {"beam": level.bar.beam, "fits_db": level.bar.trim_fits_db}
+        rows.append(row)
+    return rows
+
+
+def sheet_powers(
+    show: Show,
+    sounds: Sounds,
+    known: dict[tuple[str, Programme], NDArray[np.float64]] | None = None,
+) -> Powers:
+    """The spectra of a show's programmes, each worked out when it is first asked for.
+
+    Those that are `known` are not, and it is added to.
+    """
     edges_hz = np.array([(band.low_hz, band.high_hz) for band in GUARDED])
     meters = {
         name: Meter(
@@ -45,13 +78,13 @@ def sheet_powers(show: Show, sounds: Sounds) -> Powers:
         )
         for name, panel in show.rig.panel.items()
     }
-    known: dict[tuple[str, Programme], NDArray[np.float64]] = {}
+    found = {} if known is None else known
 
     def powers(panel: str, programme: Programme) -> NDArray[np.float64]:
         key = panel, programme
-        if key not in known:
+        if key not in found:
             sound, law, depth = programme
-            known[key] = meters[panel].powers(sounds[panel][sound], law, depth)
-        return known[key]
+            found[key] = meters[panel].powers(sounds[panel][sound], law, depth)
+        return found[key]
 
     return powers

@@ -1,8 +1,9 @@
-"""Starting a process of the host's own, with a line to it and somebody who hears what it says."""
+"""A process of the host's own: its start, the line to it, and somebody who hears what it says."""
 
 from __future__ import annotations
 
 import json
+import queue
 import threading
 from collections.abc import Callable
 from contextlib import AbstractContextManager, nullcontext
@@ -41,3 +42,15 @@ def _hear(line: Connection, generation: int, post: Post) -> None:
             post(json.loads(line.recv_bytes()) | {"generation": generation})
     except (EOFError, OSError):
         post({"gone": True, "generation": generation})
+
+
+def take_waiting(line: Connection, inbox: queue.SimpleQueue[dict[str, Any]]) -> None:
+    """In the child, before it listens: put what waits on its line into `inbox`.
+
+    EOFError when it is not wanted any more: it was told to stop, or the host is gone.
+    """
+    while line.poll():
+        message = json.loads(line.recv_bytes())
+        if message.get("stop"):
+            raise EOFError
+        inbox.put(message)

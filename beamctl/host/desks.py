@@ -12,7 +12,7 @@ from typing import Any
 
 from beamctl.errors import DeviceError
 
-LONGEST_MESSAGE = 65_536  # bytes
+LONGEST_MESSAGE = 1_000_000  # bytes: an edit may touch every cue of a long sheet
 
 Answer = Callable[[bytes], None]
 Post = Callable[[dict[str, Any], Answer], None]

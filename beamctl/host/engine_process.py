@@ -32,8 +32,9 @@ from beamctl.engine.callback import ADDRESS
 from beamctl.engine.chain import ramp_n, wires_of
 from beamctl.engine.outlet import Outlet, ring_frames
 from beamctl.engine.renderer import Renderer
-from beamctl.errors import BeamctlError, DeviceError, ShowError
-from beamctl.files.reader import load_show
+from beamctl.errors import BeamctlError, DeviceError
+from beamctl.host.child import take_waiting
+from beamctl.host.document import Readings, stored_show
 from beamctl.host.loading import prepare_sounds
 from beamctl.host.priority import (
     RENDER_PRIORITY,
@@ -44,9 +45,7 @@ from beamctl.host.priority import (
 from beamctl.host.quiet import send_native_chatter_to
 from beamctl.host.status import Status
 from beamctl.host.warming import warm
-from beamctl.show.checks import GUARD
 from beamctl.show.records import Record
-from beamctl.show.show import Show
 from beamctl.sinks.open import open_sink
 
 METER_DECAY = 0.97  # of the peak meter, per quantum
@@ -57,13 +56,14 @@ SHUT_S = 0.5  # the longest wait for the gate to shut at the end
 class Task(NamedTuple):
     """What one engine process is to do."""
 
-    folder: str
+    document: str  # path of the document it plays
+    seal: str  # of guard, rig and house as the host read them
+    air: Readings | None  # in place of the house's
     sink: str
     start: int  # number of its first frame, a multiple of 256
     outlet: str  # path of the shared memory
     status: str
     log: str
-    digests: dict[str, str]  # of the show as the host read it
 
 
 def engine_main(connection: Connection, task: Task) -> None:
@@ -84,14 +84,6 @@ def _tell(connection: Connection, message: dict[str, Any]) -> None:
     connection.send_bytes(json.dumps(message).encode())
 
 
-def _check_same(show: Show, digests: dict[str, str]) -> None:
-    """ShowError when `show` would play otherwise than the one that the host read."""
-    both = (digests | dict(show.digests)).keys() - {GUARD, "wire.toml"}
-    if changed := sorted(n for n in both if digests.get(n) != show.digests.get(n)):
-        what = f"{', '.join(changed)} changed on disk since the host started"
-        raise ShowError(what, "end the host and start it again to take the change")
-
-
 class Engine:
     """One renderer, one outlet, one sink, one line to the host."""
 
@@ -99,8 +91,7 @@ class Engine:
         self._connection = connection
         self._inbox: queue.SimpleQueue[dict[str, Any]] = queue.SimpleQueue()
         self._status = Status.attach(Path(task.status))
-        show = load_show(Path(task.folder))
-        _check_same(show, task.digests)
+        show = stored_show(Path(task.document), task.seal, task.air)
         sounds = prepare_sounds(show, self._progress)
         started = time.monotonic()
         self._progress("compiled code", 0, 1)
@@ -155,7 +146,9 @@ class Engine:
         _tell(self._connection, {"left": left | frames})
 
     def _progress(self, what: str, done: int, of: int) -> None:
+        """Say how far it is; EOFError when nobody wants it any more."""
         _tell(self._connection, {"progress": [what, done, of]})
+        take_waiting(self._connection, self._inbox)
 
     def _listen(self) -> None:
         try:

@@ -5,9 +5,9 @@ by samples; the wall clock is only watched for jumps, since the evening's record
 error ends the process: without it no lease is renewed, and the gate shuts.
 
 From the host:  {"attach": path}, {"clear": true}, {"stop": true}
-To the host:    {"progress": [what, done, of]}, {"barred": {cue: why}}, {"ready": true} once it
-                sees samples, {"reading": {...}} and {"levels": [...]} several times a second,
-                {"trip": reason}, {"blind": reason} before it ends
+To the host:    {"progress": [what, done, of]}, {"looked": 0, "barred": {...}, "cues": [...]},
+                {"ready": true} once it sees samples, {"reading": {...}} and {"levels": [...]}
+                several times a second, {"trip": reason}, {"blind": reason} before it ends
 """
 
 from __future__ import annotations
@@ -29,9 +29,10 @@ from threadpoolctl import threadpool_limits
 from beamctl.engine import layout as at
 from beamctl.engine.outlet import Outlet
 from beamctl.errors import BeamctlError
-from beamctl.files.reader import load_show
 from beamctl.guard.watch import Watch
-from beamctl.host.barring import barred, cue_levels
+from beamctl.host.barring import barred, cue_levels, rows_of
+from beamctl.host.child import take_waiting
+from beamctl.host.document import Readings, stored_show
 from beamctl.host.priority import GUARD_PRIORITY, ask_for_real_time, be_ordinary
 from beamctl.host.quiet import send_native_chatter_to
 from beamctl.show.standing import GUARDED
@@ -47,8 +48,9 @@ READING_S, LEVELS_S = 0.05, 0.2
 class GuardTask(NamedTuple):
     """What one guard process is to do."""
 
-    folder: str
+    document: str  # path of the document it guards
     seal: str  # of guard, rig and house as the host read them
+    air: Readings | None  # in place of the house's
     dose: list[list[float]]  # what an earlier guard had counted: over the window, since doors
     check: bool  # look through every cue first
     log: str
@@ -85,15 +87,10 @@ class Guard:
         self._connection = connection
         self._inbox: queue.SimpleQueue[dict[str, Any]] = queue.SimpleQueue()
         self._due = dict.fromkeys(("progress", "reading", "levels"), 0.0)
-        show = load_show(Path(task.folder))
-        if show.seal != task.seal:
-            raise BeamctlError(
-                "guard, rig or house changed on disk since the host started",
-                "end the host and start it again to take the change",
-            )
+        show = stored_show(Path(task.document), task.seal, task.air)
         if task.check:
-            found = barred(cue_levels(show, self._progress))
-            _tell(connection, {"barred": found})
+            found = cue_levels(show, self._progress)
+            _tell(connection, {"looked": 0, "barred": barred(found), "cues": rows_of(found)})
         rate_hz, self._quantum = show.rig.rate_hz, show.rig.quantum
         self._lease_n = round(LEASE_S * rate_hz)
         ring_s = (show.rig.ring_ms or 32.0) / 1000.0
@@ -129,6 +126,8 @@ class Guard:
     # -- the host --------------------------------------------------------------------------------
 
     def _progress(self, what: str, done: int, of: int) -> None:
+        """Say how far it is; EOFError when nobody wants it any more."""
+        take_waiting(self._connection, self._inbox)
         now = time.monotonic()
         if now >= self._due["progress"]:
             self._due["progress"] = now + READING_S

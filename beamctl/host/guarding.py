@@ -28,8 +28,6 @@ class Guarding:
 
     def hear(self, message: dict[str, Any], sample: int) -> list[Record]:
         """Take in what the guard said; a trip ends what sounds."""
-        if "barred" in message:
-            self._player.barred = message["barred"]
         if reason := self._warden.hear(message):
             return self._player.trip(reason, sample)
         return []
@@ -49,8 +47,8 @@ class Guarding:
             records.append(Record(sample, "guard", args=self._line()))
         return records
 
-    def begins(self) -> list[Record]:
-        """The caps and the air of the evening."""
+    def begins(self, sample: int, who: str) -> list[Record]:
+        """The caps and the air from here on; `who` read the air, "" for the house's own."""
         caps, house = self._caps, self._show.house
         args = {
             "seats_db": {f"{hz:g}": db for hz, db in caps.seats_db.items()},
@@ -65,7 +63,15 @@ class Guarding:
             "signed_on": caps.signed_on,
             "unsigned": caps.unsigned,
         }
-        return [Record(0, "caps", args=args), Record(0, "air", args=house.air.model_dump())]
+        air = Record(sample, "air", who=who, args=house.air.model_dump())
+        return [Record(sample, "caps", args=args), air]
+
+    def dose(self) -> dict[str, tuple[float, float]]:
+        """Listener → percent over the window and since doors; empty while none was counted."""
+        return {
+            who.name: (row[3], row[4])
+            for who, row in zip(self._listeners, self._warden.levels, strict=False)
+        }
 
     # -- views -----------------------------------------------------------------------------------
 

@@ -1,14 +1,15 @@
 """The journal: one line per record, appended as it happens, readable up to the last whole line.
 
-The first line says what was played: show, cues, digests of its files, versions. The rest are the
-records exactly as the engine took them. `left` closes it: how many samples went to the sink, and
-their SHA-256, which `replay` must reproduce.
+The first line says what was played: show, cues, texts and digests of its files, versions. The rest
+are the records exactly as the engine took them. `texts` says the same of another show that the next
+stream is played from. `left` closes a stream: how many samples went to the sink, and their SHA-256,
+which `replay` must reproduce.
 """
 
 from __future__ import annotations
 
 import json
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
@@ -16,29 +17,33 @@ from typing import Any, TextIO
 
 from beamctl import __version__
 from beamctl.errors import DeviceError, ShowError
-from beamctl.host.loading import digests
+from beamctl.host.document import Document, Loaded, Readings
 from beamctl.show.records import Record
-from beamctl.show.show import Show
 
 LAYOUT = 1
 
 
 @dataclass(frozen=True, slots=True)
-class Header:
-    """What a journal was made from."""
+class Played:
+    """What streams were played from: document, air, and the digests of all its files."""
 
-    folder: str
+    document: Document
+    air: Readings | None
     digests: dict[str, str]
-    rate_hz: int
-    channels: int
+
+    @classmethod
+    def of(cls, row: Mapping[str, Any], folder: str) -> Played:
+        """From a journal's first line, or the args of a `texts` record."""
+        return cls(Document(folder, row.get("texts", {})), row.get("air"), row["digests"])
 
 
 class Journal:
     """Appends records to one file; a full disk is told by `problem`, and never stops a show."""
 
-    def __init__(self, path: Path, show: Show, sink: str) -> None:
+    def __init__(self, path: Path, loaded: Loaded, document: Document, sink: str) -> None:
         self.path = path
         self.problem = ""
+        show = loaded.show
         header = {
             "beamctl": __version__,
             "journal": LAYOUT,
@@ -46,10 +51,8 @@ class Journal:
             "title": show.sheet.title,
             "folder": show.folder,
             "cues": {cue.ref: cue.title for cue in show.sheet.cue},
-            "digests": digests(show),
-            "rate_hz": show.rig.rate_hz,
-            "channels": show.channels,
             "sink": sink,
+            **texts(loaded, document),
         }
         try:
             self._file: TextIO = path.open("x", encoding="utf-8")
@@ -76,8 +79,21 @@ class Journal:
             self.problem = f"journal {self.path.name}: {error.strerror}"
 
 
-def read_journal(path: Path) -> tuple[Header, Iterator[Record]]:
-    """Header and records of a journal; a last line that was cut short is passed over.
+def texts(loaded: Loaded, document: Document) -> dict[str, Any]:
+    """What a journal keeps of a show that the next stream is played from."""
+    show = loaded.show
+    told = {"rate_hz": show.rig.rate_hz, "channels": show.channels, "texts": document.texts}
+    return told | {"air": loaded.air, "digests": loaded.digests}
+
+
+def clock(sample: int) -> Record:
+    """What time it is now, at `sample`, for who reads the journal later."""
+    utc = datetime.now(UTC).isoformat(timespec="milliseconds")
+    return Record(sample, "clock", args={"utc": utc})
+
+
+def read_journal(path: Path) -> tuple[Played, Iterator[Record]]:
+    """What a journal was begun with, and its records; a last line cut short is passed over.
 
     ShowError when the file is no journal.
     """
@@ -88,7 +104,7 @@ def read_journal(path: Path) -> tuple[Header, Iterator[Record]]:
         first: dict[str, Any] = json.loads(lines[0])
         if first["journal"] != LAYOUT:
             raise ValueError(first["journal"])
-        header = Header(first["folder"], first["digests"], first["rate_hz"], first["channels"])
+        played = Played.of(first, first["folder"])
     except OSError as error:
         raise ShowError(f"{path}: {error.strerror}", "name a journal that exists") from error
     except (ValueError, LookupError, TypeError) as error:
@@ -96,7 +112,7 @@ def read_journal(path: Path) -> tuple[Header, Iterator[Record]]:
             f"{path}: not a journal",
             "journals end in .jsonl; `beamctl host` names the one it writes",
         ) from error
-    return header, _records(path, lines[1:])
+    return played, _records(path, lines[1:])
 
 
 def _records(path: Path, lines: list[bytes]) -> Iterator[Record]:

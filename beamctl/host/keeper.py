@@ -22,12 +22,12 @@ from beamctl.engine import layout as at
 from beamctl.engine.buffers import SEGMENT
 from beamctl.engine.outlet import Outlet
 from beamctl.host.child import Post, start_child
+from beamctl.host.document import Loaded
 from beamctl.host.engine_process import Task, engine_main
 from beamctl.host.link import encode
-from beamctl.host.places import memory_folder, show_key, state_folder
+from beamctl.host.places import memory_folder, state_folder
 from beamctl.host.priority import be_ordinary
 from beamctl.host.status import Status
-from beamctl.show.show import Show
 
 STALL_S = 0.12  # without a beat of the render thread: then the process is killed …
 STARVED_S = 0.5  # … but later where it would run, and only gets no turn
@@ -38,11 +38,12 @@ LOOK_S = 2.0
 class Keeper:
     """The engine of one host; what it says, and that it went, is posted to the host's loop."""
 
-    def __init__(self, show: Show, sink: str, post: Post) -> None:
-        self._show, self._sink, self._post = show, sink, post
-        key = show_key(Path(show.folder))
-        self.outlet_path = memory_folder() / f"{key}.outlet"
-        self._status_path = memory_folder() / f"{key}.status"
+    def __init__(self, document: Path, loaded: Loaded, sink: str, start: int, post: Post) -> None:
+        """`document` is the path of what it plays, `start` the number of the first frame."""
+        self._document, self._loaded = str(document), loaded
+        self._sink, self._start, self._post = sink, start, post
+        self.outlet_path = document.with_suffix(".outlet")
+        self._status_path = document.with_suffix(".status")
         self.status = Status.create(self._status_path)
         self.outlet: Outlet | None = None
         self.ready: dict[str, Any] = {}
@@ -57,17 +58,17 @@ class Keeper:
 
     def start(self) -> None:
         """Start an engine whose first frame follows the last one's."""
-        start = 0
         if self.outlet is not None:
-            start = -(-self.outlet.count(at.WRITTEN) // SEGMENT) * SEGMENT
+            self._start = -(-self.outlet.count(at.WRITTEN) // SEGMENT) * SEGMENT
         task = Task(
-            self._show.folder,
+            self._document,
+            self._loaded.show.seal,
+            self._loaded.air,
             self._sink,
-            start,
+            self._start,
             str(self.outlet_path),
             str(self._status_path),
             str(state_folder() / "engine.log"),
-            dict(self._show.digests),
         )
         self._generation += 1
         self.ready = {}

@@ -7,6 +7,7 @@ from collections import deque
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from concurrent.futures import Future, ThreadPoolExecutor
 from dataclasses import dataclass, field
+from itertools import groupby
 from pathlib import Path
 
 import numpy as np
@@ -14,9 +15,8 @@ from numpy.typing import NDArray
 
 from beamctl.engine.chain import Chain
 from beamctl.errors import ShowError
-from beamctl.files.reader import load_show
-from beamctl.host.journal import read_journal
-from beamctl.host.loading import Sounds, digests, prepare_sounds
+from beamctl.host.journal import Played, read_journal
+from beamctl.host.loading import Hashes, Sounds, prepare_sounds
 from beamctl.host.stepped import Stepped, ring_n
 from beamctl.host.warming import warm
 from beamctl.show.events import Confirm, Go, Ready, Vouch
@@ -79,14 +79,15 @@ def render(
     sounds = prepare_sounds(show, progress)
     progress("compiled code", 0, 1)
     warm(show)
-    stream = Stream(0, list(records))
-    return _play(show, sounds, stream, samples, write, progress, guard=guard)
+    stream = Stream(show, 0, list(records))
+    return _play(sounds, stream, samples, write, progress, guard=guard)
 
 
 @dataclass(slots=True)
 class Stream:
-    """What one engine sent: its first frame, its records, and how it ended."""
+    """What one engine sent: its show, its first frame, its records, and how it ended."""
 
+    show: Show
     start: int
     records: list[Record] = field(default_factory=list)
     left: Record | None = None
@@ -102,61 +103,69 @@ class Outcome:
     same: bool | None
 
 
-def recall(path: Path) -> tuple[Show, list[Stream]]:
-    """The show that a journal was made from, and what each of its engines sent.
+def recall(path: Path) -> list[Stream]:
+    """What each engine of a journal sent; at least one.
 
-    ShowError when the show has changed since, or no sink was ever open.
+    ShowError when a sound is not what it was, or a show of an older journal, which does not hold
+    its texts; and when no sink was ever open.
     """
-    header, kept = read_journal(path)
-    show = load_show(Path(header.folder))
-    now = digests(show)
-    changed = sorted(n for n in now | header.digests if now.get(n) != header.digests.get(n))
-    if changed:
-        raise ShowError(
-            f"{header.folder}: {', '.join(changed)} changed since {path.name}",
-            "put the files back as they were to hear what was sent",
-        )
-    streams = _streams(kept)
-    if not streams:
-        raise ShowError(f"{path}: no sink was ever open", "there is nothing to render")
-    return show, streams
-
-
-def replay(show: Show, streams: list[Stream], write: Write, progress: Progress) -> list[Outcome]:
-    """Render streams again, and compare each with what left then.
-
-    For a device, which cannot count what it played, the samples that entered the ring are compared.
-    """
-    sounds = prepare_sounds(show, progress)
-    warm(show)
-    return [_again(show, sounds, stream, write, progress) for stream in streams]
-
-
-def _streams(records: Iterable[Record]) -> list[Stream]:
+    played, kept = read_journal(path)
+    show: Show | None = None  # read when a stream is played from it
     streams: list[Stream] = []
-    for record in records:
-        if record.what == "stream":
-            streams.append(Stream(record.sample))
+    for record in kept:
+        if record.what == "texts":
+            played, show = Played.of(record.args, played.document.folder), None
+        elif record.what == "stream":
+            show = show or _show_of(played, path)
+            streams.append(Stream(show, record.sample))
         elif record.what == "left" and streams:
             streams[-1].left = record
         elif streams:
             streams[-1].records.append(record)
+    if not streams:
+        raise ShowError(f"{path}: no sink was ever open", "there is nothing to render")
     return streams
 
 
-def _again(show: Show, sounds: Sounds, stream: Stream, write: Write, progress: Progress) -> Outcome:
+def replay(streams: Iterable[Stream], write: Write, progress: Progress) -> list[Outcome]:
+    """Render streams again, and compare each with what left then.
+
+    For a device, which cannot count what it played, the samples that entered the ring are compared.
+    """
+    outcomes = []
+    for _, found in groupby(streams, key=lambda stream: id(stream.show)):
+        played = list(found)
+        show = played[0].show
+        sounds = prepare_sounds(show, progress)
+        warm(show)
+        outcomes += [_again(sounds, stream, write, progress) for stream in played]
+    return outcomes
+
+
+def _show_of(played: Played, path: Path) -> Show:
+    show = played.document.load(played.air)
+    now, then = Hashes().of(show), played.digests
+    if changed := sorted(name for name in now | then if now.get(name) != then.get(name)):
+        raise ShowError(
+            f"{show.folder}: {', '.join(changed)} changed since {path.name}",
+            "put the files back as they were to hear what was sent",
+        )
+    return show
+
+
+def _again(sounds: Sounds, stream: Stream, write: Write, progress: Progress) -> Outcome:
     if stream.left is None:
         last = max((r.sample for r in stream.records), default=stream.start)
-        digest = _play(show, sounds, stream, last, write, progress)
+        digest = _play(sounds, stream, last, write, progress)
         return Outcome(stream.start, last - stream.start, digest, None)
     args = stream.left.args
     if args["left"] is not None:
-        digest = _play(show, sounds, stream, int(args["read"]), write, progress)
+        digest = _play(sounds, stream, int(args["read"]), write, progress)
         return Outcome(
             stream.start, int(args["read"]) - stream.start, digest, digest == args["left"]
         )
     entered = Entered(int(args["written"]))
-    _play(show, sounds, stream, int(args["written"]), write, progress, entered.take)
+    _play(sounds, stream, int(args["written"]), write, progress, entered.take)
     digest = entered.hash.hexdigest()
     samples = int(args["written"]) - stream.start
     return Outcome(stream.start, samples, digest, digest == args["entered"])
@@ -175,7 +184,6 @@ class Entered:
 
 
 def _play(
-    show: Show,
     sounds: Sounds,
     stream: Stream,
     until: int,
@@ -185,6 +193,7 @@ def _play(
     guard: Stepped | None = None,
 ) -> str:
     """Render a stream up to frame `until`; one thread renders, the other writes a little behind."""
+    show = stream.show
     if guard is None:
         chain = Chain(show, sounds, stream.start, tap=tap)
     else:

@@ -47,20 +47,10 @@ class Picture:
         for name, panel in self.show.rig.panel.items():
             self._emitters[name] = emitters_of(panel, self.show.cells[name], self._air)
 
-    def sheet(self) -> SheetView:
-        """The sheet as text."""
-        cues = (CueText(c.ref, c.title, c.note, c.then or "") for c in self.show.sheet.cue)
-        return SheetView(1, self.show.sheet.title, tuple(cues))
-
     def snapshot(
-        self,
-        player: Player,
-        status: Status,
-        engine: EngineView,
-        guard: GuardView,
-        notices: Iterable[str],
+        self, player: Player, status: Status, engine: EngineView, guard: GuardView
     ) -> Snapshot:
-        """Everything at the sample the engine has reached."""
+        """All of a loaded show at the sample the engine has reached."""
         now = engine.rendered
         rate = player.rate_hz
         since = None if player.newest_at is None else max(0.0, (now - player.newest_at) / rate)
@@ -72,7 +62,7 @@ class Picture:
         states = {ref: str(player.state(ref)) for ref in {**player.states, **player.barred}}
         left = {ref: s for ref in player.runs if (s := _left_s(player, ref, now)) is not None}
         return Snapshot(
-            sheet_version=1,
+            sheet_version=0,
             output=player.output,
             standby=player.standby,
             newest=player.newest,
@@ -85,10 +75,12 @@ class Picture:
             beams=tuple(self._beam(plan, now) for plan in player.plans.values()),
             panels=tuple(self._panels(status)),
             engine=engine,
-            notices=tuple(notices),
+            notices=(),
             guard=guard,
             barred=dict(player.barred),
             unvouched=player.locks.unvouched,
+            mode=player.mode,
+            trying=player.trying,
         )
 
     def _beam(self, plan: BeamPlan, now: int) -> BeamView:
@@ -155,6 +147,12 @@ class Picture:
             peak_db = 20.0 * math.log10(peak) if peak > 1e-6 else None
             gain_db = 20.0 * math.log10(gain) if gain > 0.0 else 0.0
             yield PanelView(name, cells.feeds, peak_db, gain_db)
+
+
+def sheet_view(show: Show, version: int) -> SheetView:
+    """The sheet as text."""
+    cues = (CueText(c.ref, c.title, c.note, c.then or "") for c in show.sheet.cue)
+    return SheetView(version, show.sheet.title, tuple(cues))
 
 
 def _angles(unit: tuple[float, float, float]) -> Angles:

@@ -9,14 +9,15 @@ from __future__ import annotations
 import time
 from collections import deque
 from multiprocessing.connection import Connection
+from pathlib import Path
 from typing import Any
 
 from beamctl.host.child import Post, start_child
+from beamctl.host.document import Loaded
 from beamctl.host.guard_process import GuardTask, guard_main
 from beamctl.host.link import encode
 from beamctl.host.places import state_folder
 from beamctl.host.priority import ordinarily
-from beamctl.show.show import Show
 
 STALE_S = 0.5  # without a reading it is blind, the lease long over …
 STALLED_S = 2.0  # … and then it is ended
@@ -26,8 +27,10 @@ DEATHS, DEATHS_S = 3, 60.0
 class Warden:
     """The guard of one host; what it says, and that it went, is posted to the host's loop."""
 
-    def __init__(self, show: Show, post: Post) -> None:
-        self._show, self._post = show, post
+    def __init__(self, document: Path, loaded: Loaded, post: Post, dose: list[list[float]]) -> None:
+        """`document` is the path of what it guards; `dose` is what was counted, see GuardTask."""
+        self._document, self._loaded, self._post = str(document), loaded, post
+        self._dose = dose
         self.reading: dict[str, Any] = {}
         self.levels: list[list[Any]] = []
         self._why = "starting"
@@ -43,8 +46,10 @@ class Warden:
         """Start a guard; it watches nothing before `attach`."""
         log = str(state_folder() / "guard.log")
         check = not self._checked
-        dose = [[row[column] for row in self.levels] for column in (3, 4)] if self.levels else []
-        task = GuardTask(self._show.folder, self._show.seal, dose, check, log)
+        if self.levels:
+            self._dose = [[row[column] for row in self.levels] for column in (3, 4)]
+        seal, air = self._loaded.show.seal, self._loaded.air
+        task = GuardTask(self._document, seal, air, self._dose, check, log)
         self._generation += 1
         self._ready = False
         self._process, self._line = start_child(
@@ -82,7 +87,7 @@ class Warden:
             return ""
         if "ready" in message:
             self._ready = True
-        elif "barred" in message:
+        elif "looked" in message:
             self._checked = True
         elif "progress" in message:
             what, done, of = message["progress"]
@@ -114,10 +119,19 @@ class Warden:
             self._blinded("it stalled, and was ended")
             self._process.kill()
 
-    def end(self, wait_s: float) -> None:
-        """Let the guard end by itself, then make it."""
+    def alive(self) -> bool:
+        """True while the guard's process runs."""
+        return bool(self._process is not None and self._process.is_alive())
+
+    def stop(self) -> None:
+        """Have the guard end; nothing it still says counts."""
         self._generation += 1
+        self._blinded("starting anew")
+        self._missing = False
         self._send({"stop": True})
+
+    def end(self, wait_s: float) -> None:
+        """Wait for the guard to end by itself, then make it."""
         if self._process is not None:
             self._process.join(wait_s)
             if self._process.is_alive():

@@ -91,15 +91,16 @@ class _Gathering:
         self.clock = (0, self.head.began)
         if clocks:
             self._quietly(lambda: self._set_clock(clocks[0]))
+        self.rate_hz, self.counted = self.head.rate_hz, (0, 0.0)  # at that rate since when
         self.steady = False  # samples have run without a break since the newest clock record
         self.first = self.moment(0)
 
     def moment(self, sample: int) -> Moment:
         """Wall time of a sample by the newest clock."""
-        rate_hz = self.head.rate_hz
         at, utc = self.clock
-        now = utc + timedelta(seconds=(sample - at) / rate_hz) if self.live else None
-        return Moment(sample, sample / rate_hz, now)
+        now = utc + timedelta(seconds=(sample - at) / self.rate_hz) if self.live else None
+        since, second = self.counted
+        return Moment(sample, second + (sample - since) / self.rate_hz, now)
 
     def take(self, record: Record) -> None:
         """One record; what cannot be understood is counted."""
@@ -151,6 +152,13 @@ class _Gathering:
             self.open_s += at.second - self.opened
         self.opened = at.second if self.output == "OPEN" else None
         self.keep(at, record)
+
+    def begin_show(self, at: Moment, record: Record) -> None:
+        """The next stream is of an edited show, which may have another rate."""
+        rate_hz = int(record.args["rate_hz"])
+        if rate_hz <= 0:
+            raise ValueError(rate_hz)
+        self.counted, self.rate_hz = (record.sample, at.second), rate_hz
 
     def begin_stream(self, at: Moment, record: Record) -> None:
         """An engine opened its sink."""
@@ -277,6 +285,7 @@ _HANDLERS: dict[str, Callable[[_Gathering, Moment, Record], None]] = {
     "clock": _Gathering.tell_clock,
     "output": _Gathering.turn_output,
     "stream": _Gathering.begin_stream,
+    "texts": _Gathering.begin_show,
     "caps": _Gathering.tell_caps,
     "guard": _Gathering.read,
     "cap": _Gathering.hold,

@@ -67,7 +67,7 @@ def check_aims(parts: Parts) -> Iterator[Finding]:
             beam = parts.sheet.beam.get(act.beam)
             throw = throws.get(beam.panel) if beam else None
             if throw and act.aims and act.via not in flat:
-                for key, what, warns in _aim(act, throw, house, seats):
+                for key, what, warns in told_of(act, throw, house, seats):
                     where = ("cue", i, "act", j, key)
                     yield Finding(SHEET, where, what, "warning" if warns else "error")
 
@@ -76,7 +76,8 @@ Told = Iterator[tuple[str, str, bool]]  # key, what, and whether it is only a wa
 Point = tuple[float, float, float]
 
 
-def _aim(act: Act, throw: Throw, house: House, seats: dict[str, Point]) -> Told:
+def told_of(act: Act, throw: Throw, house: House, seats: dict[str, Point]) -> Told:
+    """What one act that aims asks its panel for in vain; `seats` are the house's."""
     if act.azimuth_deg is not None or act.elevation_deg is not None:
         yield from _angles(act, throw)
         return

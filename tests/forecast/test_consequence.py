@@ -9,7 +9,7 @@ from support.stalls import STALLS
 
 from beamctl.acoustics.geometry import to_panel
 from beamctl.forecast.consequence import Consequence, Listeners
-from beamctl.forecast.throw import Throw
+from beamctl.forecast.panel import ReadyPanel
 from beamctl.guard.bars import Level, levels
 from beamctl.guard.field import Field
 from beamctl.guard.travels import Place
@@ -48,7 +48,7 @@ def test_the_target_counts_what_reaches_it_the_margin_and_no_less(seat: str) -> 
     found = look(show, seat, -30.0).target
     assert found is not None
     place, point = at_seat(show, seat)
-    drive = 0.5 * 10.0 ** (-30.0 / 20.0) * Throw(show, "p").drive(place)
+    drive = 0.5 * 10.0 ** (-30.0 / 20.0) * ReadyPanel(show, "p").drive(place)
     pressure = radiator(show).transfers_pa(point[np.newaxis], np.array([HZ]))[0] @ drive
     ear_db = 20.0 * np.log10(abs(pressure[0]) / 20e-6)
     print(f"{found.name}: {ear_db:.2f} dB at the ear, counts {found.level_db:.2f}")

@@ -11,7 +11,7 @@ from support.radiation import Array
 
 from beamctl.acoustics.geometry import direction
 from beamctl.forecast.fieldmap import FieldMap, level_db
-from beamctl.forecast.throw import Throw, place_of
+from beamctl.forecast.panel import ReadyPanel, place_of
 from beamctl.guard.travels import Place
 from beamctl.show.settled import Settled
 from beamctl.show.show import Show
@@ -52,10 +52,10 @@ def summed_pa(show: Show, points: Array, drive: np.ndarray) -> Array:
 def test_an_independent_sum(walls: tuple[str, ...], azimuth: float, per_m: float) -> None:
     house = {"surface": {name: WALLS[name] for name in walls}}
     show = panel_show(8, 8, 10.0, house=house, pan_deg=10.0, tilt_deg=-8.0)
-    throw, points = Throw(show, "p"), points_m(1)
+    ready, points = ReadyPanel(show, "p"), points_m(1)
     x, y, z = direction(azimuth, -2.0).tolist()
-    drive = throw.drive((x, y, z, per_m))
-    found = FieldMap(throw, show.house, points).pressure_pa(drive)
+    drive = ready.drive((x, y, z, per_m))
+    found = FieldMap(ready, show.house, points).pressure_pa(drive)
     expected = summed_pa(show, points, drive)
     loud = expected > expected.max() / 1000.0
     off_db = level_db(found[loud]) - level_db(expected[loud])
@@ -67,16 +67,16 @@ def test_behind_a_wall_nothing_comes_back_from_it() -> None:
     show = panel_show(8, 8, 10.0, house={"surface": {"back": WALLS["back"]}})
     bare = panel_show(8, 8, 10.0)
     behind = points_m(2) + np.array((0.0, 8.0, 0.0))
-    drive = Throw(show, "p").drive((0.0, 1.0, 0.0, 0.0))
-    with_wall = FieldMap(Throw(show, "p"), show.house, behind).pressure_pa(drive)
-    without = FieldMap(Throw(bare, "p"), bare.house, behind).pressure_pa(drive)
+    drive = ReadyPanel(show, "p").drive((0.0, 1.0, 0.0, 0.0))
+    with_wall = FieldMap(ReadyPanel(show, "p"), show.house, behind).pressure_pa(drive)
+    without = FieldMap(ReadyPanel(bare, "p"), bare.house, behind).pressure_pa(drive)
     assert with_wall == pytest.approx(without)
 
 
 def test_the_drive_is_the_independent_one_but_for_what_is_common() -> None:
     """Phases that steer and focus by distances alone, to within what a delay of all feeds adds."""
     show = panel_show(8, 8, 10.0, pan_deg=5.0)
-    throw = Throw(show, "p")
+    ready = ReadyPanel(show, "p")
     unit = direction(15.0, 4.0)
     panel = radiator(show)
     right, out = panel.cells_m[1] - panel.cells_m[0], panel.axis
@@ -86,7 +86,7 @@ def test_the_drive_is_the_independent_one_but_for_what_is_common() -> None:
         place: Place = (unit[0], unit[1], unit[2], per_m)
         aim_m = panel.cells_m.mean(axis=0) + (1.0 / per_m if per_m else 1.0) * in_room
         other = panel.phasors(aim_m, per_m > 0.0, np.array([HZ]))[0]
-        ratio = throw.drive(place) / other
+        ratio = ready.drive(place) / other
         assert np.abs(ratio) == pytest.approx(np.ones(64), abs=1e-6)
         assert np.abs(np.angle(ratio / ratio[0])).max() < np.deg2rad(0.2)
 
@@ -105,8 +105,8 @@ def test_a_beam_that_was_never_aimed_looks_straight_ahead() -> None:
 
 
 def test_a_rig_that_cannot_give_the_trim_is_held_to_its_rating() -> None:
-    weak = Throw(panel_show(8, 8, 10.0, volts_at_full_scale=10.0, max_volts=2.0), "p")
-    strong = Throw(panel_show(8, 8, 10.0), "p")
+    weak = ReadyPanel(panel_show(8, 8, 10.0, volts_at_full_scale=10.0, max_volts=2.0), "p")
+    strong = ReadyPanel(panel_show(8, 8, 10.0), "p")
     assert strong.rest_gain(0.0) == pytest.approx(0.5)
     assert strong.rest_gain(-20.0) == pytest.approx(0.05)
     assert weak.rest_gain(0.0) == pytest.approx(0.2)

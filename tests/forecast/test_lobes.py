@@ -8,7 +8,7 @@ from support.forecasting import HZ, MEDIUM, panel_show, radiator
 
 from beamctl.acoustics.geometry import direction
 from beamctl.forecast.lobes import Lobe, Lobes
-from beamctl.forecast.throw import Throw
+from beamctl.forecast.panel import ReadyPanel
 from beamctl.show.show import Show
 
 WITHIN_DEG = 0.5
@@ -41,10 +41,10 @@ def second(
     show: Show, azimuth: float, elevation: float = 0.0, per_m: float = 0.0
 ) -> tuple[Lobe, tuple[Lobe, ...]]:
     """The first beam and the second ones, steered to angles in degrees."""
-    throw = Throw(show, "p")
+    ready = ReadyPanel(show, "p")
     x, y, z = direction(azimuth, elevation).tolist()
-    drive = throw.drive((x, y, z, per_m))
-    lobes = Lobes(throw)
+    drive = ready.drive((x, y, z, per_m))
+    lobes = Lobes(ready)
     first = lobes.first(drive, (x, y, z, per_m))
     return first, lobes.second(drive, (x, y, z, per_m), first)
 

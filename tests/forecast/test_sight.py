@@ -11,8 +11,8 @@ from support.stalls import STALLS
 
 from beamctl.files.reader import load_show
 from beamctl.forecast.acts import after, before
+from beamctl.forecast.panel import in_air
 from beamctl.forecast.sight import Sight, Sights
-from beamctl.forecast.throw import in_air
 from beamctl.show.house import AirSpec
 from beamctl.show.settled import Settled
 from beamctl.show.targets import Target

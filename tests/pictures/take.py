@@ -21,9 +21,21 @@ from beamctl.host.link import Link
 HERE = Path(__file__).parent
 SHOW = HERE.parents[1] / "scenes" / "night-tram"
 CUES = ("1", "2", "3")
-SIZE = (110, 34)
-SCREENS = {"desk": "f2", "guard": "f7"}  # file → key of the screen that it shows
+SIZE = (120, 40)
+# file → keys that lead to what it shows
+SCREENS = {
+    "desk": ("f2",),
+    "guard": ("f7",),
+    "sheet": ("f3", "home", "down", "down"),
+    "bench": ("f4",),
+    "house": ("f5", "down", "down"),
+    "rig": ("f6",),
+    "wire": ("f8",),
+    "log": ("shift+f8",),
+    "help": ("f2", "f1"),
+}
 SETTLES_S = 1.5  # until a screen has its levels
+BETWEEN_S = 0.1  # keys: faster would be a paste
 
 
 def play(link: Link) -> None:
@@ -50,8 +62,10 @@ async def pictures(link: Link) -> dict[str, str]:
     try:
         app = DeskApp(courier, choose_form(plain=False, environ={"TERM": "xterm-256color"}))
         async with app.run_test(size=SIZE) as pilot:
-            for name, key in SCREENS.items():
-                await pilot.press(key)
+            for name, keys in SCREENS.items():
+                for key in keys:
+                    await pilot.press(key)
+                    await pilot.pause(BETWEEN_S)
                 await pilot.pause(SETTLES_S)
                 taken[name] = app.export_screenshot(title="beamctl desk scenes/night-tram")
     finally:
@@ -60,7 +74,7 @@ async def pictures(link: Link) -> dict[str, str]:
 
 
 def main() -> None:
-    """Play, and write desk.svg and guard.svg."""
+    """Play, and write a picture of every screen."""
     with tempfile.TemporaryDirectory() as folder:
         environ["BEAMCTL_RUNTIME"] = environ["BEAMCTL_STATE"] = folder
         host = subprocess.Popen([sys.executable, "-m", "beamctl", "host", str(SHOW)])

@@ -77,6 +77,22 @@ def test_the_newest_clock_before_a_record_gives_its_time() -> None:
     assert found == ["19:00:11", "19:00:15", "20:30:01"]
 
 
+def test_an_edited_show_of_another_rate_is_timed_by_it() -> None:
+    half = 96_000
+    found = evening(
+        STREAM,
+        clock(0.0, "2026-12-01T19:00:00+00:00"),
+        output(1.0, "COLD", "SHUT", "sink-open"),
+        Record(at(10.0), "texts", args={"rate_hz": half}),
+        Record(at(10.0), "clock", args={"utc": "2026-12-01T19:00:12+00:00"}),
+        Record(at(10.0) + 20 * half, "clock", args={"utc": "2026-12-01T19:00:32+00:00"}),
+        Record(at(10.0) + 30 * half, "left", args={"read": 1, "written": 1}),
+    )
+    assert found.problems == ()
+    assert found.last.second == pytest.approx(40.0)
+    assert found.last.utc == datetime(2026, 12, 1, 19, 0, 42, tzinfo=UTC)
+
+
 def test_a_render_has_no_time_of_day() -> None:
     found = evening(Record(0, "stream"), go(2.5))
     assert found.called[0].at.utc is None

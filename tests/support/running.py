@@ -188,15 +188,15 @@ def outputs(journal: Path) -> list[str]:
 
 def streams_of(journal: Path) -> tuple[Show, list[Stream]]:
     """The show of a journal, and what each of its engines sent: one, unless one died."""
-    show, streams = offline.recall(journal)
+    streams = offline.recall(journal)
     assert len(streams) == 1, "an engine died meanwhile"
-    return show, streams
+    return streams[0].show, streams
 
 
-def rendered(show: Show, streams: list[Stream]) -> Samples:
+def rendered(_show: Show, streams: list[Stream]) -> Samples:
     """The feeds of a stream, (samples, feeds), rendered in this process."""
     blocks: list[Samples] = []
-    offline.replay(show, streams, lambda block: blocks.append(block.copy()), lambda *_: None)
+    offline.replay(streams, lambda block: blocks.append(block.copy()), lambda *_: None)
     return np.concatenate(blocks)
 
 

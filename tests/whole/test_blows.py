@@ -135,9 +135,9 @@ def test_a_killed_host_leaves_by_the_ramp(folder: Path, ear: Ear, figures: Figur
             stage = Stage(running, folder)
             stage.play()
             blow, caught = ear.listen(partial(kill_host, stage))
-        show, (stream,) = offline.recall(journal)
+        (stream,) = offline.recall(journal)
         stream.records += stage.final_records()  # nobody was there to write them
-        judge = Judge(show, stream, stage.outlet.count(at.READ))
+        judge = Judge(stream.show, stream, stage.outlet.count(at.READ))
         heard = whole(judge, caught, ear)
         heard.sounds_before(blow.frame)
         opened, (why, fall) = judge.gates()
@@ -165,8 +165,8 @@ def test_a_stopped_host_leaves_by_the_ramp_and_stays_shut(
             stage.play()
             landed = [ear.listen(partial(stop_host, stage)) for _ in range(share)]
             assert running.stop() == 0
-        show, (stream,) = offline.recall(journal)
-        judge = Judge(show, stream)
+        (stream,) = offline.recall(journal)
+        judge = Judge(stream.show, stream)
         falls, rises = judge.gates()[1:-1:2], judge.gates()[2:-1:2]
         assert [why for why, _ in falls] == ["host-over"] * share
         assert [why for why, _ in rises] == ["opened"] * share
@@ -247,16 +247,16 @@ def lose_engines(
             assert running.snapshot().panels[0].peak_db is not None, "no loop came back"
         _, last = ear.listen(lambda: running.pass_by(0.3), share)
         assert running.stop() == 0
-    show, streams = offline.recall(journal)
+    streams = offline.recall(journal)
     begins = [stream.start for stream in streams[1:]]
     for (loss, caught), stream, next_begins in zip(landed, streams[:-1], begins, strict=True):
         assert loss.came_to <= next_begins
         if ear.hears:
-            heard = Judge(show, stream, loss.came_to).same_and_no_louder(
+            heard = Judge(stream.show, stream, loss.came_to).same_and_no_louder(
                 caught, ear.tolerance, cut=True
             )
             heard.sounds_before(heard.silent_from())
-    judge = Judge(show, streams[-1])
+    judge = Judge(streams[-1].show, streams[-1])
     assert [why for why, _ in judge.gates()] == ["opened", "hushed"]
     if ear.hears:
         assert whole(judge, last, ear).samples.any()
@@ -312,14 +312,14 @@ def test_a_lost_desk_changes_no_sample(folder: Path, ear: Ear, how: signal.Signa
                 with desk(folder) as shown:
                     landed.append(ear.listen(partial(lose_desk, stage, shown, how)))
             assert running.stop() == 0
-        show, (stream,) = offline.recall(journal)
-        judge = Judge(show, stream)
+        (stream,) = offline.recall(journal)
+        judge = Judge(stream.show, stream)
         assert [why for why, _ in judge.gates()] == ["opened", "hushed"]
         for blow, caught in landed:
             heard = whole(judge, caught, ear)
             heard.sounds_before(blow.frame)
             heard.sounds_before(blow.frame + RATE_HZ // 4)
-        assert offline.replay(show, [stream], lambda _: None, lambda *_: None)[0].same
+        assert offline.replay([stream], lambda _: None, lambda *_: None)[0].same
 
 
 def lose_desk(stage: Stage, shown: Desk, how: signal.Signals) -> Blow:
@@ -349,11 +349,11 @@ def test_a_frozen_terminal_changes_no_sample_and_no_cue_time(tmp_path: Path) -> 
         assert shown.is_blocked(), "the terminal was not frozen"
         assert running.stop() == 0
 
-    show, (stream,) = offline.recall(journal)
-    judge = Judge(show, stream)
+    (stream,) = offline.recall(journal)
+    judge = Judge(stream.show, stream)
     judge.same_and_no_louder(lambda _: Heard(stream.start, recorded(take)), 0.0)
     gos = [(r.sample, r.cue) for r in told(journal, "go") if r.who == "desk"]
-    planned = offline.play_through(show, gos, judge.until)
+    planned = offline.play_through(stream.show, gos, judge.until)
     assert moves(planned) == moves(stream.records)
 
 

@@ -132,8 +132,8 @@ def go_through(
             struck, caught = ear.listen(lambda deal=deal: strike_guard(stage, deal))
             landed.append(struck)
         assert running.stop() == 0
-    show, (stream,) = offline.recall(journal)
-    judge = Judge(show, stream)
+    (stream,) = offline.recall(journal)
+    judge = Judge(stream.show, stream)
     heard = judge.same_and_no_louder(caught, 0.0)
     count = len(deals)
     falls, rises = judge.gates()[1:-1:2], judge.gates()[2:-1:2]
@@ -143,7 +143,7 @@ def go_through(
     assert trips == [struck.reason for struck in landed]
     assert all(reason.startswith(reasons) for reason in trips), trips
     assert len(told(journal, "clear")) == count
-    assert offline.replay(show, [stream], lambda _: None, lambda *_: None)[0].same
+    assert offline.replay([stream], lambda _: None, lambda *_: None)[0].same
     zeros_ms = []
     for struck, (_, fall), (_, rise) in zip(landed, falls, rises, strict=True):
         heard.sounds_before(struck.blow.frame)

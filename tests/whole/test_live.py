@@ -280,6 +280,9 @@ NONSENSE = (
     b'{"do": "act", "name": "tail", "arguments": {"fall_s": NaN}}',
     b'{"do": "act", "name": "tail", "arguments": {"who": "\\ud800"}}',
     b'{"do": "nothing known"}',
+    b'{"do": "edit", "edit": {"label": "none", "steps": []}}',
+    b'{"do": "history", "what": "rewrite"}',
+    b'{"do": "log", "most": "all"}',
     b"[" * 50_000,
     b" " * 100_000,
 )

@@ -15,8 +15,9 @@ from support.running import COMMAND, STARTS_S, beamctl, last_hash
 from support.smallshow import FEEDS, RATE_HZ, write_show
 
 from beamctl.errors import ShowError
-from beamctl.files.reader import load_show
+from beamctl.host.document import Document, Loaded
 from beamctl.host.journal import Journal, read_journal
+from beamctl.host.loading import Hashes
 from beamctl.host.offline import left, play_through
 from beamctl.show.records import Record
 
@@ -86,10 +87,25 @@ def test_a_journal_that_tells_other_samples_is_seen(show: Path, tmp_path: Path) 
     assert "DIFFERENT SAMPLES" in done.stdout
 
 
+def test_a_journal_keeps_the_texts_it_was_made_from(show: Path, tmp_path: Path) -> None:
+    journal = tmp_path / "kept.jsonl"
+    told = render(show, tmp_path / "a.wav", "--journal", journal)
+    for file in ("sheet.toml", "rig.toml", "house.toml", "strip.csv"):
+        (show / file).write_text("format = 1\n")
+    done = beamctl("replay", journal)
+    assert done.returncode == 0, done.stderr
+    assert done.stdout.split()[-1] == told["sha256"]
+
+
 @pytest.mark.parametrize("file", ["sheet.toml", "rig.toml", "house.toml", "strip.csv"])
-def test_a_show_changed_since_is_not_replayed(show: Path, tmp_path: Path, file: str) -> None:
+def test_of_an_older_journal_the_show_must_not_have_changed(
+    show: Path, tmp_path: Path, file: str
+) -> None:
     journal = tmp_path / "kept.jsonl"
     keep(show, journal)
+    first, _, rest = journal.read_text().partition("\n")
+    row = {key: value for key, value in json.loads(first).items() if key != "texts"}
+    journal.write_text(f"{json.dumps(row)}\n{rest}")
     with (show / file).open("a") as text:
         text.write("\n")
     done = beamctl("replay", journal)
@@ -109,8 +125,10 @@ def test_a_sound_changed_since_is_not_replayed(show: Path, tmp_path: Path) -> No
 
 def keep(show: Path, journal: Path) -> None:
     """A journal of a short piece, with a hash of nothing, made without rendering."""
-    found = load_show(show)
-    kept = Journal(journal, found, "null")
+    document = Document.of(show)
+    found = document.load()
+    loaded = Loaded(found, Hashes().of(found))
+    kept = Journal(journal, loaded, document.with_lists(found.rig), "null")
     kept.write([Record(0, "stream")])
     kept.write(play_through(found, [(0, "1"), (9_600, "2")], 48_000))
     kept.write([left(48_000, "0" * 64)])

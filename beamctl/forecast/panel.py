@@ -26,7 +26,7 @@ Phasors = NDArray[np.complex128]
 AHEAD = (0.0, 1.0, 0.0)
 
 
-class Throw:
+class ReadyPanel:
     """One panel of a show, ready to be aimed many times."""
 
     def __init__(self, show: Show, panel: str) -> None:
