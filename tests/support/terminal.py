@@ -40,13 +40,14 @@ class Terminal:
         return code
 
     def desk(self, show: Path, journal: Path, **env: str) -> Path:
-        """Start a desk on the null sink, read its caution, and wait for an output that is SHUT."""
+        """Start a desk on the null sink, read its caution, and wait until it could be armed."""
         code = self.run(*COMMAND, "desk", show, "--journal", journal, **env)
         read = "I have read this"
         wait_for(lambda: read in self.screen() or code.exists(), "the caution", STARTS_S)
         self.enter()
         wait_for(lambda: read not in self.screen(), "the caution to go")
         wait_for(lambda: self.reads("SHUT") or code.exists(), "the desk to show SHUT", STARTS_S)
+        wait_for(lambda: self.reads("CLEAR") or code.exists(), "a guard that sees", STARTS_S)
         assert not code.exists(), self.screen()
         return code
 
