@@ -180,7 +180,14 @@ class DeskApp(App[int], inherit_bindings=False):
         """ "undo", "redo" or "save"; told with what it takes back or brings again."""
         edit = self._view.snapshot.edit if self._view is not None else EditView()
         label = {"undo": edit.undo, "redo": edit.redo}.get(what, "")
-        self._courier.history(what, self._tell_of(f"{what}: {label}" if label else what))
+        tell = self._tell_of(f"{what}: {label}" if label else what)
+
+        def heard(answer: Answer) -> None:
+            tell(answer)
+            if what == "save" and not answer.done:  # what to do about it takes more than a line
+                self.open(Box("NOT SAVED", answer.text, "nothing; Enter closes", use=lambda _: ""))
+
+        self._courier.history(what, heard)
 
     def open(self, box: Box) -> None:
         """Show a box; keys go into it until it closes."""

@@ -40,7 +40,7 @@ from beamctl.snapshot import Snapshot
 
 AHEAD_S = 0.025  # how far ahead of the engine acts are handed over
 SLACK_QUANTA = 1  # between what the engine has reached and the sample an event is given
-STOP_S = 5.0
+STOP_S = 10.0
 KILL_S = 0.2
 
 

@@ -23,8 +23,9 @@ them in at their frame:
     grant   ceilings                    highest drive per panel, in the order of the rig
     short   seen                        the ring held less than is looked ahead: chunks seen, 0 all
 
-`stream` begins what one engine sent: its sample is the first one's number. `left` ends it. All
-others (`go`, `hush`, `refused`, `output`, `fault` …) tell what was done and by whom.
+`stream` begins what one engine sent: its sample is the first one's number. `left` ends it. `texts`
+is an edited show that the streams after it are played from. All others (`go`, `hush`, `refused`,
+`output`, `fault` …) tell what was done and by whom.
 """
 
 from __future__ import annotations

@@ -90,13 +90,14 @@ def test_only_what_was_taken_up_enters_the_history(loop: Loop) -> None:
     assert loop.ask("redo")["done"]
     assert (loop.trims(), loop.drafting.version) == (edited, 4)
     assert loop.ask("draft")["version"] == 4
+    a_renamed_cue_is_followed_back(loop)
 
 
-def test_a_renamed_cue_is_followed_back(loop: Loop) -> None:
+def a_renamed_cue_is_followed_back(loop: Loop) -> None:
     swap = (("1", "99"), ("2", "1"), ("99", "2"))
     loop.ask("edit", *(Rename("sheet.toml", ("cue", old), new) for old, new in swap))
     loop.ask("undo")
-    there, back = (what.proposal.renamed for what in loop.proposed)
+    there, back = (what.proposal.renamed for what in loop.proposed[-2:])
     assert there == {"1": "2", "2": "1"}
     assert back == {"2": "1", "1": "2"}
 

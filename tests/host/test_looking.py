@@ -86,7 +86,7 @@ def found(level: Level | None) -> tuple[object, ...] | None:
     return level.seat, level.band_hz, pytest.approx(level.level_db), level.bar is None
 
 
-@settings(deadline=None, max_examples=40)
+@settings(deadline=None, max_examples=25)
 @given(edits())
 def test_whatever_is_not_in_doubt_has_the_forecast_it_had(small: Show, edit: Any) -> None:
     before, after = (with_cues(small, cues) for cues in edit)

@@ -143,7 +143,9 @@ class SheetPage(Page):
         self._cursor.move(view, place)  # the Bench, too, takes what was worked on here
         if self._moves(verb, view, place):
             return
-        if verb == verbs.STAND_BY.name:
+        if self._compare.is_open:  # nobody sees what a deed would be done to
+            self.desk.tell(f"{EVERYTHING[verb].title}: close the comparison first")
+        elif verb == verbs.STAND_BY.name:
             if cues:
                 self.desk.ask("standby", ref=cues[place.cue].ref)
         elif EVERYTHING[verb] in AT_ONCE and self._is_late(view, draft):
