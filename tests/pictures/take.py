@@ -66,6 +66,8 @@ async def pictures(link: Link) -> dict[str, str]:
                 for key in keys:
                     await pilot.press(key)
                     await pilot.pause(BETWEEN_S)
+                while courier.draft is None:
+                    await pilot.pause(BETWEEN_S)
                 await pilot.pause(SETTLES_S)
                 taken[name] = app.export_screenshot(title="beamctl desk scenes/night-tram")
     finally:

@@ -95,6 +95,19 @@ def test_a_cue_is_written_taken_back_compared_and_saved() -> None:
     )
 
 
+def test_behind_an_open_comparison_nothing_is_done() -> None:
+    async def what(pilot: Pilot) -> None:
+        await keys(pilot, "v")
+        await shows(pilot, "nothing differs from the show as saved")
+        await keys(pilot, "delete")
+        await shows(pilot, "Take away: close the comparison first")
+        await keys(pilot, "right", "t")
+        await shows(pilot, "Title: close the comparison first")
+        await keys(pilot, "v")
+
+    assert on_sheet(what).edits == []
+
+
 def test_the_reader_s_refusal_stands_in_the_box_until_it_is_put_right() -> None:
     async def what(pilot: Pilot) -> None:
         await keys(pilot, "down", "right", "right", *["down"] * 4)
