@@ -175,4 +175,4 @@ def main() -> int:
 
 
 if __name__ == "__main__":
-    sys.exit(run_desk(LiveHost()) if "--desk" in sys.argv else main())
+    sys.exit(run_desk(LiveHost(), Path(os.devnull)) if "--desk" in sys.argv else main())
